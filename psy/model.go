@@ -1,0 +1,299 @@
+package psy
+
+import "math"
+
+// The ranges of states.
+const (
+	minT, maxT = -60.0, 90.0
+	minP, maxP = 50e3, 110e3
+)
+
+// eps is the ratio of the molar masses of water and dry air. Source: ASHRAE
+// Handbook of Fundamentals, psychrometrics chapter.
+const eps = 0.621945
+
+// Model is moist air at one pressure, and the conventions of a calculation. The
+// zero value of the flags is real gas, and relative humidity over liquid water
+// at all temperatures, as sensors report it.
+type Model struct {
+	P     float64 // absolute pressure, Pa
+	Ideal bool    // the handbook's ideal-gas equations, without enhancement
+	Ice   bool    // relative humidity below the triple point is over ice
+}
+
+func (m Model) valid(t float64) bool {
+	return t >= minT && t <= maxT && m.P >= minP && m.P <= maxP
+}
+
+// Enhancement is the factor by which air raises the saturation pressure of
+// water vapour, f(p, t) = 1.00062 + 3.14e-8·p + 5.6e-7·t². 1 for an ideal model.
+//
+// Source: CIPM-2007 (Picard et al., Metrologia 45, 2008), equation A1.2;
+// extended here over the package's range, see the accuracy of HumRatio.
+func (m Model) Enhancement(t float64) float64 {
+	if m.Ideal {
+		return 1
+	}
+	return 1.00062 + 3.14e-8*m.P + 5.6e-7*t*t
+}
+
+func (m Model) enhancementSlope(t float64) float64 {
+	if m.Ideal {
+		return 0
+	}
+	return 2 * 5.6e-7 * t
+}
+
+// vapour is f·pws at t and its derivative with temperature, over liquid water
+// alone where water is set.
+func (m Model) vapour(t float64, water bool) (e, dt float64) {
+	l, dl := lnSat(t, water)
+	p := math.Exp(l)
+	f := m.Enhancement(t)
+	return f * p, p * (m.enhancementSlope(t) + f*dl)
+}
+
+// HumRatio is the humidity ratio at dry bulb t and relative humidity rh:
+// W = 0.621945·φ·f·pws / (p − φ·f·pws). NaN where the vapour would exceed the
+// pressure, for rh that is not finite, or outside the range of states. Negative
+// rh gives a negative W: a sensor may report it.
+//
+// Source: ASHRAE Handbook of Fundamentals, psychrometrics chapter, equations 20
+// and 22, with Enhancement.
+func (m Model) HumRatio(t, rh float64) float64 {
+	w, _, _, _ := m.HumRatioPartials(t, rh)
+	return w
+}
+
+// HumRatioPartials is HumRatio with its partial derivatives with respect to t
+// (1/K), rh (1) and p (1/Pa).
+func (m Model) HumRatioPartials(t, rh float64) (w, dt, drh, dp float64) {
+	if !m.valid(t) || math.IsInf(rh, 0) {
+		return nan4()
+	}
+	s, ds := m.vapour(t, !m.Ice)
+	return m.fromVapour(rh*s, rh*ds, s, rh*m.vapourSlopeP(t, s))
+}
+
+// vapourSlopeP is the derivative of f·pws with pressure.
+func (m Model) vapourSlopeP(t, s float64) float64 {
+	if m.Ideal {
+		return 0
+	}
+	return s / m.Enhancement(t) * 3.14e-8
+}
+
+func (m Model) fromVapour(e, de1, de2, dep float64) (w, d1, d2, dp float64) {
+	d := m.P - e
+	if !(d > 0) {
+		return nan4()
+	}
+	k := eps * m.P / (d * d) // dW/de
+	return eps * e / d, k * de1, k * de2, k*dep - eps*e/(d*d)
+}
+
+func nan4() (a, b, c, d float64) {
+	n := math.NaN()
+	return n, n, n, n
+}
+
+// SatHumRatio is the humidity ratio of saturated air at t, over ice below the
+// triple point.
+func (m Model) SatHumRatio(t float64) float64 { return m.HumRatioDewPoint(t) }
+
+// HumRatioDewPoint is the humidity ratio of air with dew point (frost point
+// below 0.01 degC) td.
+func (m Model) HumRatioDewPoint(td float64) float64 {
+	w, _, _ := m.HumRatioDewPointPartials(td)
+	return w
+}
+
+// HumRatioDewPointPartials is HumRatioDewPoint with its partial derivatives with
+// respect to td (1/K) and p (1/Pa).
+func (m Model) HumRatioDewPointPartials(td float64) (w, dtd, dp float64) {
+	if !(td >= minSat && td <= maxT && m.P >= minP && m.P <= maxP) {
+		return math.NaN(), math.NaN(), math.NaN()
+	}
+	s, ds := m.vapour(td, false)
+	w, dtd, _, dp = m.fromVapour(s, ds, 0, m.vapourSlopeP(td, s))
+	return w, dtd, dp
+}
+
+// RelHumidity is the relative humidity at t and w, in the model's convention
+// below freezing; over 1 where supersaturated.
+func (m Model) RelHumidity(t, w float64) float64 {
+	if !m.valid(t) || !(w > -eps) || math.IsInf(w, 0) {
+		return math.NaN()
+	}
+	s, _ := m.vapour(t, !m.Ice)
+	return m.P * w / (eps + w) / s
+}
+
+// Saturation is the degree of saturation W/Ws at t.
+func (m Model) Saturation(t, w float64) float64 { return w / m.SatHumRatio(t) }
+
+// DewPoint is the dew point (frost point below 0.01 degC) of air with humidity
+// ratio w. NaN for w that is not positive, or beyond -100 to 90 degC.
+func (m Model) DewPoint(w float64) float64 {
+	td, _, _ := m.DewPointPartials(w)
+	return td
+}
+
+// DewPointPartials is DewPoint with its partial derivatives with respect to w
+// (K) and p (K/Pa).
+func (m Model) DewPointPartials(w float64) (td, dw, dp float64) {
+	td = m.dewPoint(w)
+	_, dtd, wp := m.HumRatioDewPointPartials(td)
+	return td, 1 / dtd, -wp / dtd
+}
+
+func (m Model) dewPoint(w float64) float64 {
+	if !(w > 0) || math.IsInf(w, 0) || !(m.P >= minP && m.P <= maxP) {
+		return math.NaN()
+	}
+	target := math.Log(m.P * w / (eps + w))
+	// Newton in the logarithm, which is nearly linear in 1/T; the branch is known
+	// beforehand, and each is smooth.
+	at := func(t float64, water bool) (g, dg float64) {
+		l, dl := lnSat(t, water)
+		f := m.Enhancement(t)
+		return l + math.Log(f) - target, dl + m.enhancementSlope(t)/f
+	}
+	g0, _ := at(triplePoint, true)
+	water := g0 <= 0
+	lo, hi := triplePoint, maxT
+	if !water {
+		lo, hi = minSat, triplePoint
+	}
+	t := math.Min(math.Max(triplePoint-g0*14, lo), hi)
+	for range 60 {
+		g, dg := at(t, water)
+		if g > 0 {
+			hi = t
+		} else {
+			lo = t
+		}
+		next := t - g/dg
+		if !(next >= lo && next <= hi) {
+			next = 0.5 * (lo + hi)
+		}
+		if math.Abs(next-t) < 1e-11 {
+			t = next
+			break
+		}
+		t = next
+	}
+	if g, _ := at(t, water); !(math.Abs(g) < 1e-9) {
+		return math.NaN() // beyond the ends of the range
+	}
+	return t
+}
+
+// The enthalpy of moist air,
+//
+//	h = a1·t + a2·t² + W·(b0 + b1·t + b2·t² + b3·W + b4·p) + (c0 + c1·t)·(p − p0)
+//
+// with p in units of 100 kPa and p0 = 1.01325. The coefficients are a least
+// squares fit to every second of the real-gas states in testdata
+// (real-gas-states.csv); the others check it.
+const (
+	ha1, ha2 = 1.0059945781748454, 1.4245941565110612e-05
+	hb0, hb1 = 2504.008237041386, 1.7650574697511265
+	hb2, hb3 = 0.001493280803698179, -19.348915099950077
+	hb4      = -3.504342231552355
+	hc0, hc1 = -0.2695267302859432, 0.00225561541875215
+)
+
+// Enthalpy is the enthalpy of moist air at t and w, with dry air and liquid
+// water at 0 degC as zero (at 101.325 kPa). For an ideal model
+// h = 1.006·t + W·(2501 + 1.86·t).
+//
+// Source: ideal, ASHRAE Handbook of Fundamentals, psychrometrics chapter,
+// equation 30; real, a polynomial fitted to real-gas states (see the package's
+// tests), within 0.03 kJ/kg from -10 to 50 degC and 70 to 103 kPa.
+func (m Model) Enthalpy(t, w float64) float64 {
+	h, _, _ := m.EnthalpyPartials(t, w)
+	return h
+}
+
+// EnthalpyPartials is Enthalpy with its partial derivatives with respect to t
+// (kJ/(kg·K)) and w (kJ/kg).
+func (m Model) EnthalpyPartials(t, w float64) (h, dt, dw float64) {
+	if !m.valid(t) || math.IsInf(w, 0) {
+		return math.NaN(), math.NaN(), math.NaN()
+	}
+	if m.Ideal {
+		return 1.006*t + w*(2501+1.86*t), 1.006 + 1.86*w, 2501 + 1.86*t
+	}
+	q := m.P / 1e5
+	d := q - 1.01325
+	h = ha1*t + ha2*t*t + w*(hb0+hb1*t+hb2*t*t+hb3*w+hb4*q) + (hc0+hc1*t)*d
+	dt = ha1 + 2*ha2*t + w*(hb1+2*hb2*t) + hc1*d
+	dw = hb0 + hb1*t + hb2*t*t + 2*hb3*w + hb4*q
+	return h, dt, dw
+}
+
+// Temp is the dry bulb at enthalpy h and humidity ratio w: the inverse of
+// Enthalpy. NaN outside the range of states.
+func (m Model) Temp(h, w float64) float64 {
+	var t float64
+	if m.Ideal {
+		t = (h - 2501*w) / (1.006 + 1.86*w)
+	} else {
+		q := m.P / 1e5
+		d := q - 1.01325
+		a := ha2 + w*hb2
+		b := ha1 + w*hb1 + hc1*d
+		c := w*(hb0+hb3*w+hb4*q) + hc0*d - h
+		// The root that tends to -c/b as a goes to 0.
+		t = -2 * c / (b + math.Sqrt(b*b-4*a*c))
+	}
+	if !m.valid(t) {
+		return math.NaN()
+	}
+	return t
+}
+
+// HumRatioEnthalpy is the humidity ratio at dry bulb t and enthalpy h.
+func (m Model) HumRatioEnthalpy(t, h float64) float64 {
+	w, _, _ := m.HumRatioEnthalpyPartials(t, h)
+	return w
+}
+
+// HumRatioEnthalpyPartials is HumRatioEnthalpy with its partial derivatives with
+// respect to t (1/K) and h (kg/kJ).
+func (m Model) HumRatioEnthalpyPartials(t, h float64) (w, dt, dh float64) {
+	if !m.valid(t) || math.IsInf(h, 0) {
+		return math.NaN(), math.NaN(), math.NaN()
+	}
+	w = (h - 1.006*t) / (2501 + 1.86*t)
+	for range 8 { // Newton; h is nearly linear in w
+		x, _, dw := m.EnthalpyPartials(t, w)
+		w -= (x - h) / dw
+	}
+	_, ht, hw := m.EnthalpyPartials(t, w)
+	return w, -ht / hw, 1 / hw
+}
+
+// Volume is the specific volume, m³ per kg of dry air:
+// v = 0.287042·T·(1 + 1.607858·W)/p times a compressibility near 1.
+//
+// Source: ASHRAE Handbook of Fundamentals, psychrometrics chapter, equation 26;
+// the compressibility is a fit to every second of the real-gas states in
+// testdata, within 5e-5.
+func (m Model) Volume(t, w float64) float64 {
+	if !m.valid(t) || math.IsInf(w, 0) {
+		return math.NaN()
+	}
+	v := 287.042 * (t + kelvin) * (1 + 1.607858*w) / m.P
+	if m.Ideal {
+		return v
+	}
+	q := m.P / 1e5
+	x := 1.607858 * w / (1 + 1.607858*w)
+	return v * (1 + q*(-5.846196370915645e-04+t*(1.3662010707752765e-05-9.232742043330814e-08*t)+
+		x*(-5.0296642559906814e-03+6.630270405450272e-05*t-2.7390206116189673e-02*x)))
+}
+
+// Density is the density of moist air, kg/m³.
+func (m Model) Density(t, w float64) float64 { return (1 + w) / m.Volume(t, w) }
