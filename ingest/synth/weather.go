@@ -1,86 +1,125 @@
 package synth
 
 import (
+	"fmt"
 	"math"
 	"math/rand/v2"
 	"time"
+
+	"dewledger/psy"
 )
 
-// Climate is a place's weather in a few numbers: monthly means of dry bulb and
-// dew point, January first, the mean half-range of a day, and the standard
-// deviation of what weather systems add. Invented, each in the spirit of its name.
-type Climate struct {
-	Name     string
-	Mean     [12]float64 // degC
-	Dew      [12]float64 // degC
-	Diurnal  float64     // K, half-range
-	Synoptic float64     // K
+// Climate is a type of climate. Its figures are invented, typical of the type,
+// and those of no place.
+type Climate uint8
+
+// The climates, all of the northern hemisphere.
+const (
+	Marine Climate = iota
+	Continental
+	HumidSubtropical
+	HotDry
+	Cold
+	numClimates
+)
+
+type climate struct {
+	name      string
+	temp      [12]float64 // monthly mean, degC
+	dew       [12]float64 // monthly mean dew point, degC
+	day       float64     // half the mean daily range, K
+	synoptic  float64     // standard deviation of what fronts do to the temperature, K
+	dewSpread float64     // and of the dew point beside that, K
 }
 
-// Climates are five invented places.
+var climates = [numClimates]climate{
+	Marine:           {"marine", [12]float64{4, 4.5, 7, 9.5, 13, 16, 18, 18, 15, 11, 7, 4.5}, [12]float64{2, 2, 3, 4.5, 8, 11, 12.5, 12.5, 11, 8, 4.5, 2.5}, 3.5, 2.8, 1.6},
+	Continental:      {"continental", [12]float64{-4, -2, 4, 10.5, 16.5, 21.5, 24, 23, 18.5, 12, 5, -1.5}, [12]float64{-8, -7, -2, 3.5, 9.5, 15, 17.5, 17, 12.5, 6, 0, -5}, 5.2, 4.6, 2.6},
+	HumidSubtropical: {"humid-subtropical", [12]float64{8, 10, 14, 18.5, 23, 26.5, 28, 27.5, 25, 19, 13.5, 9}, [12]float64{3, 4.5, 8.5, 13, 18, 22, 23.5, 23, 20, 13.5, 8, 4}, 5.0, 3.2, 2.2},
+	HotDry:           {"hot-dry", [12]float64{12, 14, 17.5, 22, 27, 32, 35, 34, 30.5, 24, 17, 12.5}, [12]float64{0, 0.5, 1, 1, 2, 4, 11, 12, 8, 4, 1, 0}, 7.0, 2.6, 3.0},
+	Cold:             {"cold", [12]float64{-14, -11, -4, 4, 12, 17, 20, 18.5, 13, 5.5, -3, -11}, [12]float64{-18, -16, -9, -2, 4.5, 10.5, 13.5, 13, 8, 1, -6, -15}, 5.0, 5.5, 2.8},
+}
+
+// String is the climate's name.
+func (c Climate) String() string {
+	if c >= numClimates {
+		return fmt.Sprintf("climate(%d)", uint8(c))
+	}
+	return climates[c].name
+}
+
+// Climates lists the climates.
 func Climates() []Climate {
-	return []Climate{
-		{"marine", [12]float64{5, 5.5, 7.5, 10, 13, 16, 18, 18, 15.5, 12, 8, 5.5}, [12]float64{2, 2, 3.5, 5, 8, 11, 13, 13, 11.5, 8.5, 5, 3}, 3.5, 3},
-		{"continental", [12]float64{-5, -3, 3, 10, 16, 20, 23, 22, 17, 10, 3, -3}, [12]float64{-9, -7, -2, 3, 9, 14, 17, 16, 12, 5, -1, -6}, 5.5, 5},
-		{"humid", [12]float64{9, 11, 15, 19, 23, 26.5, 28, 28, 25.5, 20, 14.5, 10.5}, [12]float64{4, 5.5, 9, 13, 18, 22, 23.5, 23.5, 20.5, 14, 9, 5.5}, 5, 3.5},
-		{"hot-dry", [12]float64{12, 14, 18, 22, 27.5, 32.5, 35, 34, 31, 24, 17, 12.5}, [12]float64{0, 0, 0.5, 1, 3, 6, 13, 14, 9, 5, 2, 0}, 7.5, 3},
-		{"cold", [12]float64{-14, -11, -4, 4, 11, 16.5, 19, 18, 12, 5, -3, -11}, [12]float64{-18, -15, -9, -3, 3, 10, 13.5, 12.5, 7, 0, -7, -15}, 5, 6},
+	var out []Climate
+	for c := range numClimates {
+		out = append(out, c)
+	}
+	return out
+}
+
+// ar is a first-order autoregressive process of unit variance, whose value a
+// time dt later correlates with exp(-dt/tau).
+type ar struct {
+	x, keep, add float64
+	rng          *rand.Rand
+}
+
+func newAR(rng *rand.Rand, dt, tau time.Duration) *ar {
+	keep := math.Exp(-float64(dt) / float64(tau))
+	return &ar{x: rng.NormFloat64(), keep: keep, add: math.Sqrt(1 - keep*keep), rng: rng}
+}
+
+func (a *ar) next() float64 {
+	a.x = a.keep*a.x + a.add*a.rng.NormFloat64()
+	return a.x
+}
+
+// stream is an independent source of chance for one purpose.
+func stream(seed, purpose uint64) *rand.Rand {
+	return rand.New(rand.NewPCG(seed, purpose*0x9e3779b97f4a7c15+1))
+}
+
+// The purposes of chance that are not roles.
+const (
+	forWeather = 1000 + iota
+	forClouds
+	forZone
+	forPlant
+	forNights
+	forOffsets = 2000 // and the role
+)
+
+// weather fills in outdoor temperature and humidity ratio. A month's mean is
+// read at its middle and runs straight to the next; fronts and clouds come and
+// go about it. Dew never passes 99.5 % RH.
+func weather(c Climate, seed uint64, start time.Time, zone *time.Location, step time.Duration, air psy.Model, temp, w []float64) {
+	k := &climates[c]
+	rng := stream(seed, forWeather)
+	front := newAR(rng, step, 36*time.Hour)
+	humid := newAR(rng, step, 30*time.Hour)
+	gust := newAR(rng, step, 40*time.Minute)
+	clouds := newAR(stream(seed, forClouds), step, 20*time.Hour)
+	for i := range temp {
+		t := start.Add(time.Duration(i) * step).In(zone)
+		// The warmest hour is about three in the afternoon, the coldest near dawn:
+		// a cosine with some of its second harmonic.
+		hour := float64(t.Hour()) + float64(t.Minute())/60
+		x := 2 * math.Pi * (hour - 15) / 24
+		clear := 0.75 + 0.35*math.Tanh(clouds.next())
+		day := (math.Cos(x) + 0.15*math.Cos(2*x)) * clear
+		f := front.next()
+		temp[i] = monthly(&k.temp, t) + k.synoptic*f + k.day*day + 0.25*gust.next()
+		dew := monthly(&k.dew, t) + 0.75*k.synoptic*f + k.dewSpread*humid.next()
+		w[i] = math.Min(air.HumRatioDewPoint(dew), air.HumRatio(temp[i], 0.995))
 	}
 }
 
-// ClimateNamed is the climate of that name; it panics for an unknown one.
-func ClimateNamed(name string) Climate {
-	for _, c := range Climates() {
-		if c.Name == name {
-			return c
-		}
+func monthly(m *[12]float64, t time.Time) float64 {
+	x := float64(t.YearDay()-1)/365.25*12 - 0.5
+	if x < 0 {
+		x += 12
 	}
-	panic("synth: no climate " + name)
-}
-
-// monthly interpolates monthly means, each in the middle of its month.
-func monthly(v *[12]float64, t time.Time) float64 {
-	days := float64(time.Date(t.Year(), t.Month()+1, 0, 0, 0, 0, 0, time.UTC).Day())
-	x := float64(t.Month()-1) + (float64(t.Day())-1+float64(t.Hour())/24)/days - 0.5
-	i := int(math.Floor(x))
+	i := int(x)
 	f := x - float64(i)
-	return v[(i+12)%12]*(1-f) + v[(i+13)%12]*f
-}
-
-// wander is a first-order random process with a time constant.
-type wander struct {
-	x, sd, tau float64 // tau in hours
-	rng        *rand.Rand
-}
-
-func newWander(rng *rand.Rand, sd, tau float64) *wander {
-	return &wander{x: sd * rng.NormFloat64(), sd: sd, tau: tau, rng: rng}
-}
-
-func (w *wander) next(hours float64) float64 {
-	a := math.Exp(-hours / w.tau)
-	w.x = a*w.x + w.sd*math.Sqrt(1-a*a)*w.rng.NormFloat64()
-	return w.x
-}
-
-// weather gives outdoor dry bulb and dew point, degC, step by step.
-type weather struct {
-	c                    Climate
-	systems, gusts, damp *wander
-	cloud                *wander
-}
-
-func newWeather(c Climate, rng *rand.Rand) *weather {
-	return &weather{c: c, systems: newWander(rng, c.Synoptic, 60), gusts: newWander(rng, 0.35, 0.7),
-		damp: newWander(rng, 2.2, 40), cloud: newWander(rng, 1, 20)}
-}
-
-func (w *weather) next(local time.Time, hours float64) (t, td float64) {
-	hour := float64(local.Hour()) + float64(local.Minute())/60
-	amp := w.c.Diurnal * (1 + 0.35*math.Tanh(w.cloud.next(hours)))
-	s := w.systems.next(hours)
-	t = monthly(&w.c.Mean, local) + s + amp*math.Cos(2*math.Pi*(hour-15)/24) + w.gusts.next(hours)
-	td = monthly(&w.c.Dew, local) + 0.6*s + w.damp.next(hours)
-	// Saturation is where dew point meets dry bulb; weather stops a little short.
-	return t, math.Min(td, t-0.15)
+	return m[i%12]*(1-f) + m[(i+1)%12]*f
 }
