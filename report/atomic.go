@@ -22,8 +22,9 @@ func WriteFile(path string, write func(io.Writer) error) (err error) {
 	if err != nil {
 		return err
 	}
-	defer func() {
-		if err != nil {
+	whole := false
+	defer func() { // also where write panics
+		if !whole {
 			f.Close()
 			os.Remove(f.Name())
 		}
@@ -43,6 +44,7 @@ func WriteFile(path string, write func(io.Writer) error) (err error) {
 	if err = os.Rename(f.Name(), path); err != nil {
 		return err
 	}
+	whole = true
 	if d, derr := os.Open(dir); derr == nil {
 		_ = d.Sync() // not every file system can
 		d.Close()

@@ -127,7 +127,7 @@ func evidenceChart(id string, u *trend.Unit, f *finding.Finding, m finding.Measu
 		c.Alt = fmt.Sprintf("The effect is %s over the flagged time; flagged for %s of %s hours tested.",
 			m.PlusMinus(f.Magnitude, f.Uncertainty, f.UnitOf), finding.Significant(f.FaultHours, 3), finding.Significant(f.TestedHours, 3))
 	}
-	c.SVG = render(id, c.Title, c.Alt, chartWidth, vg.Length(60+110*len(panels)), func(dc draw.Canvas) { stack(dc, panels, heights) })
+	c.SVG = render(id, c.Title, c.Alt, chartWidth, vg.Length(50+125*len(panels)), func(dc draw.Canvas) { stack(dc, panels, heights) })
 	return c
 }
 
@@ -144,7 +144,7 @@ func stack(dc draw.Canvas, panels []*plot.Plot, heights []float64) {
 	left := vg.Length(0)
 	for k, p := range panels {
 		h := total * vg.Length(heights[k]/sum)
-		cell := draw.Crop(dc, 0, -6, y-h-dc.Min.Y+2, y-dc.Max.Y-2)
+		cell := draw.Crop(dc, 0, -8, y-h-dc.Min.Y+2, y-dc.Max.Y-8)
 		rows[k], cells[k] = []*plot.Plot{p}, []draw.Canvas{cell}
 		left = max(left, p.DataCanvas(cell).Min.X-cell.Min.X)
 		y -= h
@@ -296,7 +296,7 @@ func calendarChart(id string, u *trend.Unit, f *finding.Finding, flagged func(i 
 		}
 	}))
 	c.Legend = []legendItem{{"flagged (wide)", patch("effect")}, {"tested, nothing flagged (thin)", patch("tested")}}
-	c.SVG = render(id, c.Title, c.Alt, chartWidth, 130, p.Draw)
+	c.SVG = render(id, c.Title, c.Alt, chartWidth, 150, func(dc draw.Canvas) { p.Draw(draw.Crop(dc, 0, -6, 0, -8)) })
 	return c
 }
 
@@ -465,7 +465,7 @@ func fractionChart(id string, b *balance.Books, m finding.Measure) (chart, bool)
 	} else {
 		c.Alt = "Share of outdoor air in settled intervals against the command of the outdoor damper."
 	}
-	c.SVG = render(id, c.Title, c.Alt, chartWidth, 320, p.Draw)
+	c.SVG = render(id, c.Title, c.Alt, chartWidth, 320, func(dc draw.Canvas) { p.Draw(draw.Crop(dc, 0, -8, 0, -6)) })
 	return c, true
 }
 

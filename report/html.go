@@ -7,6 +7,7 @@ import (
 	"io"
 	"math"
 	"slices"
+	"strconv"
 	"strings"
 	"time"
 
@@ -141,7 +142,7 @@ func viewOf(r UnitReport) unitPage {
 		Site: u.Site.Name, Unit: u.Name, Serves: u.Plant.Serves, Version: r.Version,
 		Period: fmt.Sprintf("%s to %s", u.Axis.Start.In(zone).Format("2 January 2006"), u.Axis.End().Add(-time.Second).In(zone).Format("2 January 2006")),
 		Usable: finding.Significant(100*s.UsableShare, 3) + " %",
-		Zone:   zone.String(), Factor: finding.Significant(s.Factor, 2), Assumed: r.Assumed, Measure: m.String(),
+		Zone:   zone.String(), Factor: strconv.FormatFloat(s.Factor, 'g', -1, 64), Assumed: r.Assumed, Measure: m.String(),
 		BooksMoist: m.Label("g/kg"), BooksEnergy: m.Label("kJ/kg"),
 	}
 	v.Lead = leadOf(s)

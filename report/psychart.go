@@ -44,20 +44,20 @@ func meanOf(b *balance.Books, s trend.Station, where []bool) (meanState, bool) {
 		return meanState{}, false
 	}
 	mt, mw := t.Mean(0, len(keep), keep), w.Mean(0, len(keep), keep)
-	mean := func(g []float64) float64 {
+	mean := func(g *balance.Term) float64 {
 		var sum float64
 		for i, k := range keep {
 			if k {
-				sum += g[i]
+				sum += g.At(i)
 			}
 		}
 		return sum / float64(n)
 	}
 	var cov float64
-	for _, a := range t.Terms {
-		for _, c := range w.Terms {
-			if a.Role == c.Role && a.Role != trend.NoRole {
-				cov += mean(a.G) * mean(c.G)
+	for i := range t.Terms {
+		for j := range w.Terms {
+			if a, c := &t.Terms[i], &w.Terms[j]; a.Role == c.Role && a.Role != trend.NoRole {
+				cov += mean(a) * mean(c)
 			}
 		}
 	}
@@ -199,7 +199,7 @@ func psychroChart(id string, b *balance.Books, k float64, m finding.Measure) (ch
 		c.Legend = append(c.Legend, legendItem{x.station.Title() + ", ± at k = " + finding.Significant(k, 2), swatch(l.name, "", string(glyphSVG(l.shape, l.name)))})
 	}
 	c.Legend = append(c.Legend, legendItem{"single intervals, thinned", template.HTML(`<svg class="sw" viewBox="0 0 30 12" aria-hidden="true"><circle cx="9" cy="5" r="1.5" style="fill:var(--cloud)"/><circle cx="19" cy="8" r="1.5" style="fill:var(--cloud)"/></svg>`)})
-	c.SVG = render(id, c.Title, c.Alt, chartWidth, 430, p.Draw)
+	c.SVG = render(id, c.Title, c.Alt, chartWidth, 430, func(dc draw.Canvas) { p.Draw(draw.Crop(dc, 0, -8, 0, -6)) })
 	return c, true
 }
 
@@ -256,7 +256,7 @@ func (g psychroGrid) Plot(c draw.Canvas, p *plot.Plot) {
 	}
 	label := func(at vg.Point, s string, xa, ya float64) {
 		sty := p.X.Tick.Label
-		sty.Font.Size = 9
+		sty.Font.Size = 8
 		sty.XAlign, sty.YAlign = draw.XAlignment(xa), draw.YAlignment(ya)
 		c.FillText(sty, at, s)
 	}

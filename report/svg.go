@@ -79,7 +79,7 @@ type legendItem struct {
 
 const (
 	chartWidth = 760 * vg.Length(1)
-	fontSize   = vg.Length(11)
+	fontSize   = vg.Length(9.5)
 )
 
 // render draws on an SVG canvas and makes it fit for inlining: no prolog, no

@@ -19,6 +19,15 @@ const (
 // capacity of the air hangs on it, kg/kg: 0.004 off moves that by 0.7 %.
 const nominalHumRatio = 0.008
 
+// leastSpread and leastMoistSpread are how far apart the streams must be at the
+// least, however good the sensors: what lags and layers is there all the same,
+// and near equal streams their differences decide the fraction (common practice,
+// no source). K and kg/kg.
+const (
+	leastSpread      = 2.0
+	leastMoistSpread = 0.0005
+)
+
 // leastDenominator is how many of its own standard uncertainties the difference
 // between outdoor and return air must reach before a fraction is taken from it.
 const leastDenominator = 4
@@ -89,7 +98,7 @@ func (b *Books) fractionTemp() (*form, []float64) {
 		x, y := ar[i]*(tr.val[i]-tm.val[i]), ao[i]*(tm.val[i]-to.val[i])
 		d := x + y
 		span := tr.val[i] - to.val[i]
-		if !(span*span >= leastDenominator*leastDenominator*(qo.at(i)+qr.at(i))) {
+		if !(span*span >= max(leastSpread*leastSpread, leastDenominator*leastDenominator*(qo.at(i)+qr.at(i)))) {
 			f[i], v[i], do[i], dr[i], dm[i] = math.NaN(), math.NaN(), 0, 0, 0
 			continue
 		}
@@ -125,7 +134,7 @@ func (b *Books) fractionMoisture() (*form, []float64) {
 	vo, vr := b.variance(wo), b.variance(wr)
 	for i := range f {
 		d := wr.val[i] - wo.val[i]
-		if !(d*d >= leastDenominator*leastDenominator*(vo[i]+vr[i])) {
+		if !(d*d >= max(leastMoistSpread*leastMoistSpread, leastDenominator*leastDenominator*(vo[i]+vr[i]))) {
 			f[i], do[i], dr[i], dm[i] = math.NaN(), 0, 0, 0
 			continue
 		}

@@ -66,30 +66,25 @@ func (b *Books) mixed() *mixture {
 		if fr.all.f != nil {
 			m.hum = b.mixFrom(fr.all.f, wo, wr)
 		}
-		m.dry = b.mixFrom(b.knownFraction(fr.fromDry), wo, wr)
+		if fr.fromDry.f != nil {
+			m.dry = b.mixFrom(b.knownFraction(fr.fromDry), wo, wr)
+		}
 		return m
 	})
 }
 
-// knownFraction is the fraction where it is known better than not at all, else
-// one half with the standard uncertainty of anything between 0 and 1: streams of
-// nearly the same moisture mix to a known one whatever their shares.
+// knownFraction is the fraction where it is known better than not at all, and
+// NaN elsewhere: a guess of one half would err the same way all month on a unit
+// that stands at its minimum, and the bound says what is sure.
 func (b *Books) knownFraction(c combined) *form {
-	val, w, rest := b.buffer(), b.buffer(), b.buffer()
+	val, w := b.buffer(), b.buffer()
 	for i := range val {
-		w[i], rest[i] = 0, 0
-		if c.f != nil && c.v[i] <= worstFraction*worstFraction {
+		val[i], w[i] = math.NaN(), 0
+		if c.v[i] <= worstFraction*worstFraction {
 			val[i], w[i] = c.f.val[i], 1
-		} else {
-			val[i], rest[i] = 0.5, worstFraction
 		}
 	}
-	f := &form{val: val}
-	if c.f != nil {
-		f.sens = b.merge(weigh{f: c.f, w: w, own: true})
-	}
-	f.sens = append(f.sens, sens{role: trend.NoRole, c: 1, d: rest})
-	return f
+	return &form{val: val, sens: b.merge(weigh{f: c.f, w: w, own: true})}
 }
 
 // mixingEnergy is the mixed temperature less that of the mixture, by a fraction

@@ -183,11 +183,14 @@ func (b *Books) moisturePlaces() []moisturePlace {
 		}
 		return out
 	}
-	if m := b.mixed(); m.dry != nil {
-		out = append(out,
-			moisturePlace{name: "mix_" + w.to.String(), s: w, in: m.dry, out: b.humRatio(w.to)},
-			moisturePlace{name: "bound_" + w.to.String(), s: w, bound: true, lo: b.humRatio(b.path.inlet), hi: b.humRatio(trend.Return), out: b.humRatio(w.to)})
+	lo, hi := b.humRatio(b.path.inlet), b.humRatio(trend.Return)
+	if !b.path.mixing || lo == nil || hi == nil {
+		return out
 	}
+	if m := b.mixed(); m.dry != nil {
+		out = append(out, moisturePlace{name: "mix_" + w.to.String(), s: w, in: m.dry, out: b.humRatio(w.to)})
+	}
+	out = append(out, moisturePlace{name: "bound_" + w.to.String(), s: w, bound: true, lo: lo, hi: hi, out: b.humRatio(w.to)})
 	return out
 }
 

@@ -149,6 +149,7 @@ type RuleDoc struct {
 // ParamDoc is one parameter of a rule, with the value in force.
 type ParamDoc struct {
 	Name, Unit        string
+	Value             float64 // in force
 	Default, Min, Max float64
 	Why               string
 }

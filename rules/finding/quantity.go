@@ -106,13 +106,17 @@ func (m Measure) Value(v float64, unit string, digits int) string {
 
 // PlusMinus words a value with its expanded uncertainty, with the digits that
 // the uncertainty deserves: "2.1 ± 1.6 K". Without an uncertainty (NaN or 0)
-// it words the value alone.
+// it words the value alone; so it does where the uncertainty is under half a
+// percent of the value, which nobody acts on.
 func (m Measure) PlusMinus(v, u float64, unit string) string {
 	if math.IsNaN(v) {
 		return "no figure"
 	}
 	if math.IsNaN(u) || u <= 0 {
 		return m.Value(v, unit, 2)
+	}
+	if u < 0.005*math.Abs(v) {
+		return m.Value(v, unit, 3)
 	}
 	x, l := m.Convert(v, unit)
 	u *= m.Scale(unit)
@@ -185,4 +189,9 @@ func Grouped(x float64, d int) string {
 		return "−" + whole
 	}
 	return whole
+}
+
+// Range words a figure with its low and high, two digits each.
+func Range(mid, lo, hi float64) string {
+	return Significant(mid, 2) + " (" + Significant(lo, 2) + " to " + Significant(hi, 2) + ")"
 }
