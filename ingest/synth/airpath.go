@@ -167,11 +167,11 @@ type wetCoil struct {
 	film float64 // kg per (kg/s of design flow)
 }
 
-// What a wet coil holds and how fast a dry air stream takes it back: about a
-// quarter of an hour at 2 g/kg (common practice, no source).
+// What a wet coil holds, and how fast a dry air stream takes it back: most of it
+// within a quarter of an hour (common practice, no source).
 const (
-	filmFull = 1.5   // kg per (kg/s)
-	filmRate = 0.25  // share of the way to saturation
+	filmFull = 0.5   // kg per (kg/s)
+	filmRate = 0.7   // share of the way to saturation
 	filmMost = 0.002 // kg/kg
 )
 

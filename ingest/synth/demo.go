@@ -18,6 +18,7 @@ type demoUnit struct {
 	allDay   bool // a laboratory: never unoccupied
 	coils    map[trend.Component]string
 	fault    Fault
+	limit    float64 // high limit, degC; 0: between 18 and 21
 	from, to float64 // of the fault, as shares of the period; to 0: the end
 }
 
@@ -43,16 +44,16 @@ var demoUnits = []demoUnit{
 	{serves: "Offices, second floor", train: officeTrain, variable: true, fault: Fault{Kind: CoolValvePasses, Severity: 0.4}},
 	{serves: "Library", train: officeTrain, variable: true},
 	{serves: "Server support", train: plainTrain, variable: true, fault: Fault{Kind: EconomizerOff, Severity: 1}},
-	{serves: "Dining hall", train: plainTrain, fault: Fault{Kind: SensorScale, Role: trend.RARH, Severity: 2.6}},
+	{serves: "Dining hall", train: plainTrain, fault: Fault{Kind: SensorScale, Role: trend.OARH, Severity: 1.3}},
 	{serves: "Print shop", train: damped, fault: Fault{Kind: HumidifierPasses, Severity: 2.5}},
 	{serves: "Gymnasium", train: plainTrain, fault: Fault{Kind: SensorFrozen, Role: trend.MATemp, Severity: 1}, from: 0.4},
 	{serves: "Clinic", train: officeTrain, variable: true, fault: Fault{Kind: DamperLeaks, Severity: 0.4}},
 	{serves: "Workshop", train: plainTrain},
 	{serves: "Archive", train: plainTrain, variable: true, fault: Fault{Kind: SensorOffset, Role: trend.SARH, Severity: -0.22}},
-	{serves: "Theatre", train: plainTrain, fault: Fault{Kind: SensorOffset, Role: trend.MATemp, Severity: 9}},
+	{serves: "Theatre", train: plainTrain, fault: Fault{Kind: SensorOffset, Role: trend.MATemp, Severity: 4}},
 	{serves: "Cold rooms, fresh air", train: labTrain, allDay: true, fault: Fault{Kind: PreheatFails, Severity: 1}, from: 0.3, to: 0.9},
 	{serves: "Kitchen", train: plainTrain, variable: true, fault: Fault{Kind: SensorCeiling, Role: trend.OARH, Severity: 0.7}},
-	{serves: "Pool plant room", train: plainTrain, variable: true, fault: Fault{Kind: CarryOver, Severity: 3}},
+	{serves: "Pool plant room", train: plainTrain, variable: true, limit: 10, fault: Fault{Kind: CarryOver, Severity: 3}},
 }
 
 // demo is the demo site: a campus in a mild, damp spring.
@@ -83,6 +84,9 @@ func demo(o SiteOptions) (*folder, error) {
 				MinOAFraction: math.Round(20*draw(0.15, 0.25)) / 20,
 				HighLimit:     trend.HighLimit{Kind: trend.FixedDryBulb, Value: math.Round(draw(18, 21))},
 			},
+		}
+		if u.limit != 0 {
+			s.Plant.HighLimit.Value = u.limit
 		}
 		if u.allDay {
 			s.Schedule = Always()

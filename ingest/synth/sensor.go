@@ -99,7 +99,7 @@ func resolutionOf(r trend.Role) float64 {
 	case trend.Pressure, trend.Concentration, trend.Switch:
 		return 1
 	case trend.BaroPressure:
-		return 10
+		return 1
 	}
 	return 0.1
 }
@@ -132,14 +132,15 @@ type sensors struct {
 }
 
 type sensor struct {
-	role   trend.Role
-	grade  grade
-	offset float64
-	rng    *rand.Rand
-	follow float64 // of the way that the element goes in one step
-	inner  float64 // the element's own state
-	begun  bool
-	out    []float64
+	role    trend.Role
+	grade   grade
+	offset  float64
+	rng     *rand.Rand
+	inverse float64 // of the resolution
+	follow  float64 // of the way that the element goes in one step
+	inner   float64 // the element's own state
+	begun   bool
+	out     []float64
 }
 
 func (q *sensors) begin(s *sim) {
@@ -156,6 +157,7 @@ func (q *sensors) begin(s *sim) {
 			return // the train has no such place
 		}
 		x := sensor{role: r, grade: gradeOf(r), rng: stream(s.spec.Seed, uint64(r)), follow: 1}
+		x.inverse = math.Round(1 / x.grade.resolution)
 		draw := stream(s.spec.Seed, forOffsets+uint64(r))
 		switch model.Offsets {
 		case Rectangular:
@@ -197,7 +199,7 @@ func (q *sensors) read(s *sim) {
 		if x.role == trend.MATemp && model.Stratification && s.on {
 			v += 0.05 * lean * 4 * s.share * (1 - s.share) * (s.st[trend.Outdoor].t - s.st[trend.Return].t)
 		}
-		if !x.begun {
+		if !x.begun || x.follow == 1 {
 			x.inner, x.begun = v, true
 		}
 		x.inner += x.follow * (v - x.inner)
@@ -217,7 +219,7 @@ func (q *sensors) read(s *sim) {
 		v = x.clip(v)
 		v = s.spoil(x.role, v)
 		if model.Quantise {
-			v = math.Round(v/x.grade.resolution) * x.grade.resolution
+			v = math.Round(v*x.inverse) / x.inverse // exact decimals
 		}
 		q.now[x.role] = v
 		if x.out != nil {
