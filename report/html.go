@@ -350,6 +350,9 @@ func rowTitle(r balance.Row) string {
 	if r.Component != "" {
 		return capital(r.Component.Title())
 	}
+	if len(r.Between) > 2 {
+		return capital(r.From.Title()) + " to " + r.To.Title()
+	}
 	var parts []string
 	for _, c := range r.Between {
 		parts = append(parts, c.Title())

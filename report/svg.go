@@ -101,7 +101,7 @@ func render(id, title, alt string, w, h vg.Length, paint func(c draw.Canvas)) te
 		}
 		return hex
 	})
-	s = fontStyle.ReplaceAllString(s, `style="font-size:$1px$2"`)
+	s = fontStyle.ReplaceAllString(s, `style="font-size:${1}px$2"`)
 	s = strings.ReplaceAll(s, "\n\tstyle", " style")
 	head := fmt.Sprintf(`<svg viewBox="0 0 %g %g" role="img" aria-labelledby="%s-t %s-d"><title id="%s-t">%s</title><desc id="%s-d">%s</desc>`,
 		w.Points(), h.Points(), id, id, id, template.HTMLEscapeString(title), id, template.HTMLEscapeString(alt))
