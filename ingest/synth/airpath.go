@@ -120,8 +120,12 @@ func (s *sim) warmTo(x state, t float64, p *Part) state {
 	return y
 }
 
+// fullest is the relative humidity over which air takes no more water in the
+// moment that it spends in a unit.
+const fullest = 0.97
+
 // wet adds water or steam of enthalpy hw, as much of add (kg/kg) as the air
-// takes short of 97 % RH, without other heat.
+// takes, without other heat.
 func (s *sim) wet(x state, add, hw float64, p *Part) state {
 	if !(add > 0) {
 		return x
@@ -129,12 +133,19 @@ func (s *sim) wet(x state, add, hw float64, p *Part) state {
 	h := s.air.Enthalpy(x.t, x.w)
 	after := func() state { return state{s.air.Temp(h+add*hw, x.w+add), x.w + add} }
 	y := after()
-	// Halving finds an amount that evaporates, not the most that would.
-	for n := 0; y.w > s.air.HumRatio(y.t, 0.97); n++ {
-		if n == 8 {
+	if y.w > s.air.HumRatio(y.t, fullest) {
+		lo, hi := 0.0, add
+		for range 24 {
+			add = (lo + hi) / 2
+			if y = after(); y.w > s.air.HumRatio(y.t, fullest) {
+				hi = add
+			} else {
+				lo = add
+			}
+		}
+		if add = lo; add == 0 {
 			return x
 		}
-		add *= 0.5
 		y = after()
 	}
 	p.Water[s.i] += s.flow * add

@@ -18,7 +18,7 @@ type demoUnit struct {
 	allDay   bool // a laboratory: never unoccupied
 	coils    map[trend.Component]string
 	fault    Fault
-	limit    float64 // high limit, degC; 0: between 18 and 21
+	limit    float64 // high limit, degC, where it is low: a unit that hardly cools with outdoor air; 0: between 18 and 21
 	from, to float64 // of the fault, as shares of the period; to 0: the end
 }
 
@@ -53,7 +53,7 @@ var demoUnits = []demoUnit{
 	{serves: "Theatre", train: plainTrain, fault: Fault{Kind: SensorOffset, Role: trend.MATemp, Severity: 4}},
 	{serves: "Cold rooms, fresh air", train: labTrain, allDay: true, fault: Fault{Kind: PreheatFails, Severity: 1}, from: 0.3, to: 0.9},
 	{serves: "Kitchen", train: plainTrain, variable: true, fault: Fault{Kind: SensorCeiling, Role: trend.OARH, Severity: 0.7}},
-	{serves: "Pool plant room", train: plainTrain, variable: true, limit: 10, fault: Fault{Kind: CarryOver, Severity: 3}},
+	{serves: "Pool plant room", train: plainTrain, variable: true, limit: 2, fault: Fault{Kind: CarryOver, Severity: 3}},
 }
 
 // demo is the demo site: a campus in a mild, damp spring.

@@ -12,3 +12,6 @@ func DemoUnit(o SiteOptions, i int) (Spec, error) {
 	}
 	return f.unit(i), nil
 }
+
+// DemoKinds is the number of units after which the demo's list begins again.
+func DemoKinds() int { return len(demoUnits) }
