@@ -196,7 +196,7 @@ func psychroChart(id string, b *balance.Books, k float64, m finding.Measure) (ch
 	}))
 	for _, x := range means {
 		l := stationLine[x.station]
-		c.Legend = append(c.Legend, legendItem{x.station.Title() + ", ± at k = " + finding.Significant(k, 2), swatch(l.name, "", string(glyphSVG(l.shape, l.name)))})
+		c.Legend = append(c.Legend, legendItem{x.station.Title() + ", ± at k = " + fmt.Sprint(k), swatch(l.name, "", string(glyphSVG(l.shape, l.name)))})
 	}
 	c.Legend = append(c.Legend, legendItem{"single intervals, thinned", template.HTML(`<svg class="sw" viewBox="0 0 30 12" aria-hidden="true"><circle cx="9" cy="5" r="1.5" style="fill:var(--cloud)"/><circle cx="19" cy="8" r="1.5" style="fill:var(--cloud)"/></svg>`)})
 	c.SVG = render(id, c.Title, c.Alt, chartWidth, 430, func(dc draw.Canvas) { p.Draw(draw.Crop(dc, 0, -8, 0, -6)) })

@@ -20,12 +20,13 @@ var layers = map[string][]string{
 	"psy":                {},
 	"ingest/trend":       {},
 	"rules/finding":      {},
+	"ingest/columnfile":  {},
 	"ingest":             {"ingest/trend", "psy"},
-	"ingest/synth":       {"ingest/trend", "psy"},
+	"ingest/synth":       {"ingest/trend", "psy", "ingest/columnfile"},
 	"rules/balance":      {"ingest/trend", "psy"},
 	"rules":              {"ingest/trend", "rules/balance", "rules/finding", "psy", "ingest/synth"},
 	"rules/ruletest":     {"ingest/trend", "rules/balance", "rules/finding", "psy", "ingest/synth", "rules"},
-	"report":             {"ingest/trend", "rules/finding", "psy", "rules/balance"},
+	"report":             {"ingest/trend", "rules/finding", "psy", "rules/balance", "ingest/columnfile"},
 	"cmd/internal/fleet": nil, // all
 	"cmd/dewledger":      nil,
 }

@@ -64,7 +64,8 @@ func Write(w io.Writer, timeName string, n int, at func(i int) time.Time, cols [
 		return err
 	}
 	props := parquet.NewWriterProperties(parquet.WithCompression(compress.Codecs.Snappy), parquet.WithAllocator(memory.DefaultAllocator), parquet.WithCreatedBy("dewledger"))
-	fw := file.NewParquetWriter(w, root, file.WithWriterProps(props), file.WithWriteMetadata(kv))
+	// The writer would close what it writes to, which is the caller's.
+	fw := file.NewParquetWriter(struct{ io.Writer }{w}, root, file.WithWriterProps(props), file.WithWriteMetadata(kv))
 	defer func() {
 		if cerr := fw.Close(); err == nil {
 			err = cerr
