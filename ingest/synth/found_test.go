@@ -135,3 +135,66 @@ func TestRulesExist(t *testing.T) {
 		}
 	}
 }
+
+// Column names are understood without a points schedule, whichever style they
+// are written in.
+func TestNamesAreUnderstood(t *testing.T) {
+	ctx := context.Background()
+	for _, train := range [][]trend.Component{
+		nil,
+		{trend.Preheat, trend.Cooling, trend.Heating, trend.Fan},
+		{trend.Recovery, trend.Mixing, trend.Cooling, trend.Humidify, trend.Heating, trend.Fan},
+	} {
+		for _, h := range []synth.Header{synth.RoleNames, synth.TradeSI, synth.TradeIP} {
+			r := synth.Simulate(synth.Spec{Seed: 1, Days: 7, Variable: true, Plant: trend.Plant{Train: train}, Sensors: synth.Realistic()})
+			name := filepath.Join(t.TempDir(), "AHU-1.csv")
+			f, err := os.Create(name)
+			if err != nil {
+				t.Fatal(err)
+			}
+			if err := r.WriteCSV(f, h); err != nil {
+				t.Fatal(err)
+			}
+			if err := f.Close(); err != nil {
+				t.Fatal(err)
+			}
+			in, err := ingest.Read(ctx, ingest.Options{Paths: []string{name}})
+			if err != nil {
+				t.Fatal(err)
+			}
+			u, _, err := in.Load(ctx, 0)
+			if err != nil {
+				t.Fatal(err)
+			}
+			for role, c := range r.Read {
+				switch {
+				case c == nil:
+				case u.Cols[role] == nil:
+					t.Errorf("style %d: %v is not found", h, trend.Role(role))
+				default: // half a last digit apart, and a little for conversion
+					for i, v := range c.Val {
+						if d := u.Cols[role].Val[i] - v; !(d < 0.6*step(trend.Role(role)) && d > -0.6*step(trend.Role(role))) {
+							t.Fatalf("style %d: %v reads %v, was written from %v", h, trend.Role(role), u.Cols[role].Val[i], v)
+						}
+					}
+				}
+			}
+		}
+	}
+}
+
+// step is the coarsest last digit that any style writes a role's kind with, in
+// the canonical unit.
+func step(r trend.Role) float64 {
+	switch r.Kind() {
+	case trend.RelHumidity, trend.Position:
+		return 0.001
+	case trend.AirFlow:
+		return 0.01
+	case trend.Power:
+		return 0.01
+	case trend.Pressure, trend.Concentration, trend.Switch:
+		return 1
+	}
+	return 0.1
+}

@@ -27,7 +27,6 @@ type sim struct {
 	ctl    controls
 	zone   zone
 	coil   wetCoil
-	parts  []*Part
 	st     [trend.NumStations]state
 	flow   float64 // kg/s of dry air
 	speed  float64 // of the supply fan, 0 to 1

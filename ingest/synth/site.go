@@ -97,14 +97,17 @@ func WriteSite(ctx context.Context, dir string, o SiteOptions) error {
 }
 
 func (f *folder) write(ctx context.Context, dir string) (err error) {
-	dir = filepath.Clean(dir)
+	named := dir
+	if dir, err = filepath.Abs(dir); err != nil {
+		return err
+	}
 	entries, err := os.ReadDir(dir)
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
 	case err != nil:
-		return fmt.Errorf("write a site to %s: %w", dir, err)
+		return fmt.Errorf("write a site to %s: %w", named, err)
 	case len(entries) > 0:
-		return fmt.Errorf("%s is not empty; name a new folder, or empty it first", dir)
+		return fmt.Errorf("%s is not empty; name a new folder, or empty it first", named)
 	}
 	if err := os.MkdirAll(filepath.Dir(dir), 0o777); err != nil {
 		return err
@@ -115,7 +118,7 @@ func (f *folder) write(ctx context.Context, dir string) (err error) {
 	}
 	defer func() {
 		if err != nil {
-			err = errors.Join(fmt.Errorf("write a site to %s: %w", dir, err), os.RemoveAll(tmp))
+			err = errors.Join(fmt.Errorf("write a site to %s: %w", named, err), os.RemoveAll(tmp))
 		}
 	}()
 	if err := f.fill(ctx, tmp); err != nil {
@@ -125,7 +128,7 @@ func (f *folder) write(ctx context.Context, dir string) (err error) {
 	if err := os.Chmod(tmp, 0o755); err != nil {
 		return err
 	}
-	if entries != nil || dirExists(dir) {
+	if dirExists(dir) {
 		if err := os.Remove(dir); err != nil { // fails where it has filled up meanwhile
 			return err
 		}

@@ -12,11 +12,10 @@ import (
 // heating setpoint. All figures are per kg/s of design flow (common practice,
 // no source).
 type zone struct {
-	t, w, co2    float64
-	people       float64 // 0 to 1
-	gain         float64 // kW
-	busy, swirl  *ar
-	holdT, holdW float64
+	t, w, co2   float64
+	people      float64 // 0 to 1
+	gain        float64 // kW
+	busy, swirl *ar
 }
 
 const (
