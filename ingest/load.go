@@ -81,6 +81,9 @@ func (r *Result) Load(ctx context.Context, i int) (*trend.Unit, []Source, error)
 		return nil, sources, &UnitError{Unit: us.Name, File: us.Files[0].Name, Msg: "no column has a value that can be used",
 			Hint: "the notes say why each was left out; state units of measure in points.csv"}
 	}
+	if u.Plant.TrainAssumed {
+		u.Plant.Train = assumeTrain(u)
+	}
 	sortNotes(notes.list)
 	u.Notes = notes.list
 	return u, sources, nil

@@ -44,7 +44,7 @@ type shown struct {
 // a difference, degC a temperature. Conversion factors are those of NIST
 // Special Publication 811 (2008), appendix B.
 var shownAs = map[string][2]shown{
-	"K":        {{"K", 1, 0}, {"°F diff.", 1.8, 0}},
+	"K":        {{"K", 1, 0}, {"°F", 1.8, 0}},
 	"degC":     {{"°C", 1, 0}, {"°F", 1.8, 32}},
 	"g/kg":     {{"g/kg", 1, 0}, {"gr/lb", 7, 0}}, // 7000 gr a pound
 	"kg/kg":    {{"g/kg", 1000, 0}, {"gr/lb", 7000, 0}},
