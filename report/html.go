@@ -382,6 +382,13 @@ func bookOf(r balance.Row, k float64, m finding.Measure) bookRow {
 		Heat: plain(r.HeatKWh, "kWh", 0), Cool: plain(r.CoolKWh, "kWh", 0),
 		Open: r.MoistureCloses == balance.Open || r.EnergyCloses == balance.Open, Note: r.Note,
 	}
+	if r.UseHours > 0 {
+		verb, x := "took up", r.UseGain
+		if x < 0 {
+			verb, x = "lost", -x
+		}
+		b.Note = fmt.Sprintf("In use (%s h), the air %s %s of moisture.", finding.Significant(r.UseHours, 3), verb, m.PlusMinus(x, k*r.UseU, "g/kg"))
+	}
 	return b
 }
 

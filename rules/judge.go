@@ -360,6 +360,9 @@ func passOrNot(p *Pass, e *Evidence, r *ruling, valid []bool, av average) (findi
 		return finding.NotTestable, fmt.Sprintf("condition: only %s h of %s; %s h are needed",
 			finding.Significant(hours, 2), p.rule.Doc.When, finding.Significant(need, 2))
 	}
+	if e.Short != "" {
+		return finding.NotTestable, "condition: " + e.Short
+	}
 	if e.Ungated {
 		for i, ok := range valid {
 			if ok && av.mean[i]+p.factor*av.u[i] > matters {

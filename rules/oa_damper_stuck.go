@@ -90,6 +90,11 @@ var oaDamperStuck = &Rule{
 					p.words.Value(lowC, "fraction", 2), p.words.Value(highC, "fraction", 2), p.words.Value(lowF, "fraction", 2), p.words.Value(highF, "fraction", 2))
 			}
 		}
+		// A damper that sticks where its command rests shows nothing: weeks without a
+		// swing are not passed by those with one.
+		if asked, all := hours(e.Applies, p.Axis()), hours(usable, p.Axis()); asked > 0 && asked < 0.5*all {
+			e.Short = fmt.Sprintf("the damper command swung far enough in only %s of %s settled hours", finding.Significant(asked, 2), finding.Significant(all, 2))
+		}
 		if len(us) > 0 {
 			all := always(len(us))
 			if e.Sees = matters + 2*quantile95*medianWhere(us, all, 0.5); e.Sees > 1 {

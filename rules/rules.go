@@ -101,6 +101,7 @@ type Evidence struct {
 	Readings  []trend.Role
 	Terms     []Term                           // for the worked figures
 	What      string                           // what Effect is, in words
+	Short     string                           // why silence here would be no pass although something was tested; empty: it would be
 	Blind     string                           // why an effect may be missing although the question applied, in words
 	Says      string                           // replaces Doc.Says where the place changes the sentence
 	From, To  string                           // stations in words, for {from} and {to}

@@ -8,6 +8,7 @@ import (
 	"os"
 	"os/signal"
 	"syscall"
+	_ "time/tzdata" // zones where the machine has none: one file runs anywhere
 
 	"dewledger/ingest"
 )

@@ -1,7 +1,6 @@
 package balance
 
 import (
-	"fmt"
 	"math"
 	"slices"
 
@@ -45,7 +44,8 @@ type Row struct {
 	MoistureCloses, EnergyCloses                         Closure
 	HeatKWh, CoolKWh                                     float64 // over the period, while asked for; NaN without a flow or a coil
 
-	Note string // a sentence; may be empty
+	UseHours, UseGain, UseU float64 // while a wet component ran: hours, moisture gained and its standard uncertainty, g/kg; 0 h where none did
+	Note                    string  // a sentence; may be empty
 }
 
 // Account is the books' table: the mixing box, then a row a section of the air
@@ -188,7 +188,8 @@ func (b *Books) moistureResidual(r *Row, s section, gain *Series) {
 		r.MoistureCloses = b.closure(r, m)
 	}
 	if isWet {
-		r.Note = b.wetNote(s, gain)
+		in := b.inUse(s, gain)
+		r.UseHours, r.UseGain, r.UseU = float64(in.N)*b.u.Axis.Hours(), in.Val, in.U()
 	}
 }
 
@@ -203,8 +204,9 @@ func both(keep []bool, vs ...[]float64) []bool {
 	return out
 }
 
-// wetNote words what a wet section did to moisture while in use.
-func (b *Books) wetNote(s section, gain *Series) string {
+// inUse is what a wet section did to moisture in settled time while one of its
+// wet components ran, g/kg: gained, or lost where negative.
+func (b *Books) inUse(s section, gain *Series) Mean {
 	use := make([]bool, b.n())
 	for _, c := range s.between {
 		if wet(c) {
@@ -216,16 +218,7 @@ func (b *Books) wetNote(s section, gain *Series) string {
 	for i, on := range b.Settled() {
 		use[i] = use[i] && on
 	}
-	m := gain.Mean(0, b.n(), use)
-	if m.N == 0 {
-		return ""
-	}
-	verb := "took up"
-	if m.Val < 0 {
-		verb = "lost"
-	}
-	return fmt.Sprintf("In use (%.0f h), the air %s %.2f ± %.2f g/kg.",
-		float64(m.N)*b.u.Axis.Hours(), verb, math.Abs(m.Val), closureFactor*m.U())
+	return gain.Mean(0, b.n(), use)
 }
 
 // energy is the heat and the cooling of a section over the period, kWh, while the
