@@ -48,8 +48,6 @@ var (
 	inkHC     = newInk("st-hc")
 	inkSA     = newInk("st-sa")
 	inkCmd    = newInk("cmd")
-	inkHeat   = newInk("heat")
-	inkCool   = newInk("cool")
 )
 
 var svgColour = regexp.MustCompile(`#[0-9A-F]{6}`)

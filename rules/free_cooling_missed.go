@@ -78,9 +78,7 @@ var freeCoolingMissed = &Rule{
 		cooling, settled := p.Running(trend.Cooling), p.Settled()
 		n := p.N()
 		s := &balance.Series{Name: "free_cooling_missed", Unit: "fraction", Val: nans(n), Off: f.Off, Noise: f.Noise}
-		for _, t := range f.Scaled("", "fraction", -1, 0).Terms {
-			s.Terms = append(s.Terms, t)
-		}
+		s.Terms = f.Scaled("", "fraction", -1, 0).Terms
 		applies := make([]bool, n)
 		for i := range n {
 			if !settled[i] || !cooling[i] || !welcome(i) {
