@@ -159,6 +159,9 @@ func Significant(x float64, digits int) string {
 		return strconv.FormatFloat(x, 'f', 0, 64)
 	}
 	e := int(math.Floor(math.Log10(math.Abs(x))))
+	if p := math.Pow(10, float64(digits-1-e)); math.Round(math.Abs(x)*p) >= math.Pow(10, float64(digits)) {
+		e++ // rounding carries into a new digit
+	}
 	d := digits - 1 - e
 	if d < 0 { // round the whole part
 		p := math.Pow(10, float64(-d))
