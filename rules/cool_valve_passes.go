@@ -31,8 +31,11 @@ var coolValvePasses = &Rule{
 	},
 	Needs: Needs{
 		Balances: []*balance.Def{balance.TempRise},
-		Commands: coilCommands,
-		State:    true,
+		Commands: []trend.Component{trend.Cooling},
+		CommandsFor: func(b *balance.Books) []trend.Component {
+			return besides(b, trend.Cooling)
+		},
+		State: true,
 	},
 	Params: []Param{
 		matters("K", 1.5, 0.3, 10, "smaller falls are within what healthy units show with both coils shut"),

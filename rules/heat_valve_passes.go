@@ -34,8 +34,11 @@ var heatValvePasses = &Rule{
 	},
 	Needs: Needs{
 		Balances: []*balance.Def{balance.TempRise},
-		Commands: coilCommands,
-		State:    true,
+		Commands: []trend.Component{trend.Heating, trend.Reheat},
+		CommandsFor: func(b *balance.Books) []trend.Component {
+			return besides(b, trend.Heating, trend.Reheat)
+		},
+		State: true,
 	},
 	Params: []Param{
 		matters("K", 1.5, 0.3, 10, "smaller rises are within what healthy units show with both coils shut"),
@@ -56,6 +59,23 @@ var heatValvePasses = &Rule{
 	Eval: func(p *Pass) []Evidence {
 		return shutSections(p, []trend.Component{trend.Heating, trend.Reheat}, 1, HeatCoil)
 	},
+}
+
+// besides lists the other parts with a command in the sections that hold one of
+// the coils: unless they are shut as well, the section proves nothing.
+func besides(b *balance.Books, coils ...trend.Component) []trend.Component {
+	var out []trend.Component
+	for _, q := range b.Get(balance.TempRise) {
+		if !slices.ContainsFunc(coils, func(c trend.Component) bool { return slices.Contains(q.Between, c) }) {
+			continue
+		}
+		for _, c := range q.Between {
+			if slices.Contains(coilCommands, c) && !slices.Contains(coils, c) && !slices.Contains(out, c) {
+				out = append(out, c)
+			}
+		}
+	}
+	return out
 }
 
 var coilCommands = []trend.Component{trend.Preheat, trend.Heating, trend.Reheat, trend.Cooling, trend.Humidify}

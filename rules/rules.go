@@ -56,9 +56,11 @@ type Needs struct {
 	Commands []trend.Component // needed where the train has them
 	Roles    []balance.Need
 	RolesFor func(u *trend.Unit) []balance.Need // needs that follow from the unit's train
-	Uses     []trend.Role                       // read where present, never missed
-	State    bool                               // fan, operating state, settled
-	Schedule bool                               // occupied or not, from a point or the schedule
+	// CommandsFor are commands that follow from where the balances were struck.
+	CommandsFor func(b *balance.Books) []trend.Component
+	Uses        []trend.Role // read where present, never missed
+	State       bool         // fan, operating state, settled
+	Schedule    bool         // occupied or not, from a point or the schedule
 }
 
 // Param is one parameter of a rule, in canonical units.
@@ -267,6 +269,14 @@ func (r *Rule) readings(u *trend.Unit) []balance.Need {
 	return append(slices.Clip(r.Needs.Roles), r.Needs.RolesFor(u)...)
 }
 
+// commands are the components whose commands the rule needs on this unit.
+func (r *Rule) commands(b *balance.Books) []trend.Component {
+	if r.Needs.CommandsFor == nil {
+		return r.Needs.Commands
+	}
+	return append(slices.Clip(r.Needs.Commands), r.Needs.CommandsFor(b)...)
+}
+
 // Reading is a declared reading with its uncertainties, or nil.
 func (p *Pass) Reading(r trend.Role) *balance.Series {
 	if p.Col(r) == nil {
@@ -276,7 +286,7 @@ func (p *Pass) Reading(r trend.Role) *balance.Series {
 }
 
 func (p *Pass) command(c trend.Component) {
-	if !slices.Contains(p.rule.Needs.Commands, c) {
+	if !slices.Contains(p.rule.commands(p.b), c) {
 		panic(fmt.Sprintf("rules: %s reads undeclared command of %s", p.rule.Name, c))
 	}
 	p.seen.commands[c] = true

@@ -269,7 +269,7 @@ func (r *Rule) Missing(b *balance.Books) []trend.Role {
 	for _, d := range r.Needs.Balances {
 		add(d.Missing(u)...)
 	}
-	for _, c := range r.Needs.Commands {
+	for _, c := range r.commands(b) {
 		if u.Plant.In(c) && b.Command(c) == nil {
 			add(commandRole(c))
 		}
@@ -433,6 +433,9 @@ func (r *Rule) needsInWords() []string {
 	}
 	for _, c := range r.Needs.Commands {
 		out = append(out, "command of the "+c.Title()+", where the train has it")
+	}
+	if r.Needs.CommandsFor != nil {
+		out = append(out, "commands of the other coils in the same section")
 	}
 	if r.Needs.State {
 		out = append(out, "fan and operating state")
