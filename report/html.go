@@ -33,7 +33,8 @@ type UnitReport struct {
 	Sources []SourceFile
 	Measure finding.Measure
 	Version string
-	Assumed []string // what nobody stated, a sentence each
+	Assumed []string     // what nobody stated, a sentence each
+	Notes   []trend.Note // about the run as a whole; the unit has its own
 }
 
 // pages parses the templates; they are part of the program, so an error is a
@@ -188,7 +189,7 @@ func viewOf(r UnitReport) unitPage {
 		v.OneMore = append(v.OneMore, x)
 	}
 	v.Points = pointsOf(u)
-	for _, n := range u.Notes {
+	for _, n := range slices.Concat(r.Notes, u.Notes) {
 		x := noteRow{Where: n.File, Text: n.Text}
 		if n.Line > 0 {
 			x.Where += fmt.Sprintf(", line %d", n.Line)

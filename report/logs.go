@@ -147,7 +147,7 @@ func FindingsJSON(w io.Writer, sets []finding.Set, zone *time.Location) error {
 		for _, d := range s.Rules {
 			r := rule{Name: d.Name, Title: d.Title, Text: d.Text, Formula: d.Formula, Cannot: d.Cannot, Unit: d.Unit, Sources: d.Sources, Params: map[string]float64{}}
 			for _, p := range d.Params {
-				r.Params[p.Name] = p.Default
+				r.Params[p.Name] = p.Value
 			}
 			out.Rules = append(out.Rules, r)
 		}

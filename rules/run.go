@@ -54,7 +54,7 @@ func Run(ctx context.Context, b *balance.Books, opt Options) finding.Set {
 		}
 		for k := range rulings {
 			for i, a := range rulings[k].e.Applies {
-				usable[i] = usable[i] || a && !math.IsNaN(rulings[k].e.Effect.Val[i])
+				usable[i] = usable[i] || len(r.Needs.Balances) > 0 && a && !math.IsNaN(rulings[k].e.Effect.Val[i])
 			}
 			if rulings[k].verdict == finding.Fault {
 				set.Findings = append(set.Findings, describe(p, &rulings[k], opt, tally))

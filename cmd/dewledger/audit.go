@@ -121,7 +121,7 @@ func auditUnit(ctx context.Context, in *ingest.Result, i int, a *audited, out *o
 		page = filepath.Join("units", report.SafeName(u.Name)+".html")
 	}
 	err = out.write(page, func(w io.Writer) error {
-		return report.UnitPage(w, report.UnitReport{Set: &a.set, Books: b, Sources: reportSources(sources), Measure: measure, Version: version(), Assumed: assumed(in, u)})
+		return report.UnitPage(w, report.UnitReport{Set: &a.set, Books: b, Sources: reportSources(sources), Measure: measure, Version: version(), Assumed: assumed(in, u), Notes: in.Notes})
 	})
 	if err != nil {
 		return err

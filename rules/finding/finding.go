@@ -163,7 +163,7 @@ type Set struct {
 	Factor      float64    // coverage factor of every ± in the set
 	PeriodHours float64
 	FanHours    float64
-	UsableShare float64 // of the period: intervals in which anything could be tested
+	UsableShare float64 // of the period: intervals in which some balance could be tested
 	Currency    string
 	Total       Energy // no kilowatt-hour counted twice
 	OneMore     []OneMore
