@@ -19,7 +19,7 @@ var freezeDanger = &Rule{
 			"else mixed air, else outdoor air. A frozen coil bursts, so the reading itself counts, without waiting for certainty; and a pass is given only where the reading less its uncertainty stays above the limit.",
 		Formula: "effect = limit − T",
 		When:    "time with the fan on and a reading of the air that meets the first water coil",
-		Says: "With the fan on, {from} at the first water coil was {effect} below the limit of 4 °C or its set value, for {hours} hours; " +
+		Says: "With the fan on, {from} at the first water coil was {effect} below the safe limit, for {hours} hours; " +
 			"water in that coil can freeze and burst it.",
 		Cannot: "A sensor that reads low, stratified air (colder in places than the sensor says), and a coil protected by glycol or by flow.",
 		Sources: []string{
@@ -64,6 +64,8 @@ var freezeDanger = &Rule{
 		return []Evidence{{
 			Component: role.String(), Effect: t.Scaled("freeze_danger", "K", -1, p.Param("limit")), Applies: p.FanOn(), Ungated: true,
 			Suspects: []string{"preheat", "oa_damper", role.String()}, Readings: []trend.Role{role, trend.OATemp, trend.PreheatValve, trend.OADamper},
+			Says: "With the fan on, {from} at the first water coil was {effect} below the safe limit of " + p.words.Value(p.Param("limit"), "degC", 2) +
+				", for {hours} hours; water in that coil can freeze and burst it.",
 			What: "limit less the temperature of " + st.Title(), From: st.Title(),
 			Terms: []Term{{st.Title(), "degC", t.Val}, {"outdoor air", "degC", p.TempAt(trend.Outdoor)}},
 		}}

@@ -61,6 +61,26 @@ var heatValvePasses = &Rule{
 	},
 }
 
+// passing prices a valve that passes: m·cp·ΔT of heat or cooling nobody asked
+// for, and as much again, up to its duty, where the other coil works against it.
+func passing(p *Pass, flow []float64, heating bool) func(i int, effect float64) Rate {
+	heat, cool := p.Duties()
+	return func(i int, effect float64) Rate {
+		kw := flow[i] * CpAir * math.Max(0, effect)
+		r := Rate{Heat: kw}
+		switch {
+		case heating && p.CoolAsked(i):
+			r.Cool = capped(kw, cool, i)
+		case !heating:
+			r = Rate{Cool: kw}
+			if p.HeatAsked(i) {
+				r.Heat = capped(kw, heat, i)
+			}
+		}
+		return r
+	}
+}
+
 // besides lists the other parts with a command in the sections that hold one of
 // the coils: unless they are shut as well, the section proves nothing.
 func besides(b *balance.Books, coils ...trend.Component) []trend.Component {
@@ -134,13 +154,7 @@ func shutSections(p *Pass, coils []trend.Component, sign float64, pot Pot) []Evi
 			}
 		}
 		if flow != nil {
-			e.Waste = func(i int, effect float64) Rate {
-				kw := flow.Val[i] * CpAir * math.Max(0, effect)
-				if heating {
-					return Rate{Heat: kw}
-				}
-				return Rate{Cool: kw}
-			}
+			e.Waste = passing(p, flow.Val, heating)
 		}
 		out = append(out, e)
 	}
