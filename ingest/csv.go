@@ -3,7 +3,6 @@ package ingest
 import (
 	"bytes"
 	"context"
-	"fmt"
 	"io"
 
 	"dewledger/ingest/trend"
@@ -36,16 +35,20 @@ func (t *rawTable) skip(why string) {
 
 // csvReader reads the wanted columns of a delimited text in one pass over its
 // bytes. A line is a record.
+//
+// Columns are filled by row number; a row that turns out bad is written over by
+// the next.
 type csvReader struct {
 	name   string
 	sh     *shape
 	want   []int32 // column -> slot, -1 not wanted
 	last   int     // last column that must be looked at
 	t      *rawTable
+	n      int         // rows so far
+	cols   [][]float64 // as long as there is room for rows
 	stamps stampReader
 	marks  []badCell
 	clock  []byte // date and time of day joined
-	fields [][]byte
 	line   int
 }
 
@@ -58,7 +61,7 @@ type badCell struct {
 // readCSV reads the columns of r listed in wanted. rows is a guess of how many
 // rows there are, to size the columns by.
 func readCSV(ctx context.Context, r io.Reader, name string, sh *shape, wanted []int, rows int) (*rawTable, error) {
-	t := &rawTable{cols: make([][]float64, len(wanted)), unit: make([]string, len(wanted)), ms: make([]int64, 0, rows)}
+	t := &rawTable{cols: make([][]float64, len(wanted)), unit: make([]string, len(wanted))}
 	c := &csvReader{name: name, sh: sh, t: t, want: make([]int32, len(sh.header)), marks: make([]badCell, len(wanted))}
 	for i := range c.want {
 		c.want[i] = -1
@@ -66,10 +69,11 @@ func readCSV(ctx context.Context, r io.Reader, name string, sh *shape, wanted []
 	c.last = max(sh.timeCol, sh.clockCol)
 	for slot, col := range wanted {
 		c.want[col] = int32(slot)
-		t.cols[slot] = make([]float64, 0, rows)
 		c.last = max(c.last, col)
 	}
 	c.stamps.order = sh.order
+	c.cols = make([][]float64, len(wanted))
+	c.grow(max(rows, 16))
 	if err := c.run(ctx, r); err != nil {
 		return nil, err
 	}
@@ -77,13 +81,28 @@ func readCSV(ctx context.Context, r io.Reader, name string, sh *shape, wanted []
 		return nil, err
 	}
 	t.zoned = c.stamps.zoned
-	t.rows = len(t.ms)
+	t.rows = c.n
+	for slot := range c.cols {
+		t.cols[slot] = c.cols[slot][:c.n]
+	}
 	for slot, m := range c.marks {
 		if m.count > 0 {
 			t.notes.addCount(m.count, "bad-cell", name, sh.header[wanted[slot]], m.line, "%s is not a number; the cell is left out as %v", quote(m.text), m.why)
 		}
 	}
 	return t, nil
+}
+
+// grow makes room for rows.
+func (c *csvReader) grow(rows int) {
+	for i, v := range c.cols {
+		w := make([]float64, rows)
+		copy(w, v)
+		c.cols[i] = w
+	}
+	ms := make([]int64, len(c.t.ms), rows)
+	copy(ms, c.t.ms)
+	c.t.ms = ms
 }
 
 func (c *csvReader) run(ctx context.Context, r io.Reader) error {
@@ -148,15 +167,17 @@ func (c *csvReader) row(line []byte) {
 	if c.line < c.sh.dataLine {
 		return
 	}
-	if n := len(line); n > 0 && line[n-1] == '\r' {
-		line = line[:n-1]
+	if k := len(line); k > 0 && line[k-1] == '\r' {
+		line = line[:k-1]
 	}
 	if len(line) == 0 {
 		return
 	}
 	delim, mark := c.sh.delim, c.sh.mark
-	t := c.t
-	have := len(t.ms)
+	t, n := c.t, c.n
+	if n == cap(t.ms) {
+		c.grow(2 * n)
+	}
 	var stamp, clock []byte
 	col, i, ended := 0, 0, false
 	for ; col <= c.last; col++ {
@@ -165,16 +186,15 @@ func (c *csvReader) row(line []byte) {
 			// The shape of nearly every cell, read where it stands.
 			v, next, ok := cellNumber(line, i, delim, mark)
 			if ok {
-				t.cols[slot] = append(t.cols[slot], v)
+				c.cols[slot][n] = v
 				i = next
 			} else {
 				var body []byte
 				if body, next = cellBytes(line, i, delim); next < 0 {
-					c.undo(have)
-					c.rejoin(line)
+					c.torn(line)
 					return
 				}
-				t.cols[slot] = append(t.cols[slot], c.slow(int(slot), body))
+				c.cols[slot][n] = c.slow(int(slot), body)
 				i = next
 			}
 		} else {
@@ -184,8 +204,7 @@ func (c *csvReader) row(line []byte) {
 			if i < len(line) && line[i] == '"' {
 				_, i = cellBytes(line, start, delim)
 				if i < 0 {
-					c.undo(have)
-					c.rejoin(line)
+					c.torn(line)
 					return
 				}
 			}
@@ -208,22 +227,21 @@ func (c *csvReader) row(line []byte) {
 		fields += 1 + bytes.Count(line[i:], []byte{delim})
 	}
 	if fields != len(c.sh.header) && !c.tolerable(line, fields) {
-		c.undo(have)
 		c.ragged(fields)
 		return
 	}
 	if col <= c.last { // a short row, allowed: the cells it leaves out are blank
 		for ; col <= c.last; col++ {
 			if slot := c.want[col]; slot >= 0 {
-				t.cols[slot] = append(t.cols[slot], missing(trend.Gap))
+				c.cols[slot][n] = missing(trend.Gap)
 			}
 		}
 	}
-	c.time(have, stamp, clock)
+	c.time(stamp, clock)
 }
 
-// time adds the row's stamp, or takes the row back.
-func (c *csvReader) time(have int, stamp, clock []byte) {
+// time reads the row's stamp; with it the row counts.
+func (c *csvReader) time(stamp, clock []byte) {
 	stamp = unquote(stamp)
 	if c.sh.clockCol >= 0 {
 		c.clock = append(append(append(c.clock[:0], stamp...), ' '), unquote(clock)...)
@@ -231,18 +249,12 @@ func (c *csvReader) time(have int, stamp, clock []byte) {
 	}
 	ms, ok := c.stamps.read(stamp, c.t.ms)
 	if !ok {
-		c.undo(have)
 		c.t.skip(skipBadTime)
 		c.t.notes.add("bad-time", c.name, c.sh.header[c.sh.timeCol], c.line, "%s is not a time; the row is left out", quote(toUTF8(stamp)))
 		return
 	}
 	c.t.ms = append(c.t.ms, ms)
-}
-
-func (c *csvReader) undo(rows int) {
-	for s := range c.t.cols {
-		c.t.cols[s] = c.t.cols[s][:rows]
-	}
+	c.n++
 }
 
 func (c *csvReader) ragged(fields int) {
@@ -281,8 +293,8 @@ func onlyBlank(cells []string) bool {
 	return true
 }
 
-// rejoin deals with a line whose quotes do not close: it is torn.
-func (c *csvReader) rejoin(line []byte) {
+// torn leaves out a line whose quotes do not close.
+func (c *csvReader) torn(line []byte) {
 	c.ragged(len(splitLine(string(line), c.sh.delim)))
 }
 
@@ -397,178 +409,4 @@ func unquote(b []byte) []byte {
 		return trimBlank(b[1 : len(b)-1])
 	}
 	return b
-}
-
-// stampReader reads a column of stamps. Stamps that follow each other mostly
-// share all but their clock, so only that is read again.
-type stampReader struct {
-	order   order
-	decided bool // a slashed date has settled the order
-	slashed bool
-	started bool
-	zoned   bool
-
-	text       []byte // last stamp read in full
-	from, to   int    // its clock, as hh:mm or hh:mm:ss
-	ms, ofDay  int64
-	twelve     bool
-	lastMS     int64
-	fastUsable bool
-}
-
-// read reads one stamp; seen are the stamps before it, which are put right where
-// this one settles that days come first.
-func (s *stampReader) read(b []byte, seen []int64) (int64, bool) {
-	if s.fastUsable && len(b) == len(s.text) && string(b[:s.from]) == string(s.text[:s.from]) && string(b[s.to:]) == string(s.text[s.to:]) {
-		if ofDay, ok := shortClock(b[s.from:s.to], s.twelve); ok {
-			return s.ms + ofDay - s.ofDay, true
-		}
-	}
-	c, ok := parseStamp(b, s.order)
-	if !ok || c.form == formTimeOnly {
-		return 0, false
-	}
-	if !s.started {
-		s.started, s.zoned = true, c.zoned
-	} else if c.zoned != s.zoned {
-		return 0, false
-	}
-	if c.form == formSlashed || c.form == formSlashOnly {
-		s.slashed = true
-		if s.order == orderUnknown && !s.decided {
-			switch {
-			case c.a > 12:
-				s.order, s.decided = dayFirst, true
-				for i, ms := range seen {
-					seen[i] = swapDayMonth(ms)
-				}
-			case c.b > 12:
-				s.order, s.decided = monthFirst, true
-			}
-		}
-	}
-	s.remember(b, c)
-	return c.ms, true
-}
-
-func (s *stampReader) remember(b []byte, c civil) {
-	s.fastUsable = false
-	i := bytes.IndexByte(b, ':')
-	if i < 2 || i+3 > len(b) || c.form == formEpoch {
-		return
-	}
-	s.from, s.to = i-2, i+3
-	if s.to+3 <= len(b) && b[s.to] == ':' {
-		s.to += 3
-	}
-	tail := bytes.ToLower(b[s.to:])
-	s.twelve = bytes.Contains(tail, []byte("am")) || bytes.Contains(tail, []byte("pm")) || bytes.Contains(tail, []byte("a.m")) || bytes.Contains(tail, []byte("p.m"))
-	ofDay, ok := shortClock(b[s.from:s.to], s.twelve)
-	if !ok {
-		return
-	}
-	s.text = append(s.text[:0], b...)
-	s.ms, s.ofDay, s.fastUsable = c.ms, ofDay, true
-}
-
-// shortClock reads hh:mm or hh:mm:ss, all digits there.
-func shortClock(b []byte, twelve bool) (int64, bool) {
-	if len(b) < 5 || b[2] != ':' {
-		return 0, false
-	}
-	h1, h2, m1, m2 := b[0]-'0', b[1]-'0', b[3]-'0', b[4]-'0'
-	if h1 > 2 || h2 > 9 || m1 > 5 || m2 > 9 {
-		return 0, false
-	}
-	h := int64(h1)*10 + int64(h2)
-	if h > 23 {
-		return 0, false
-	}
-	if twelve {
-		if h < 1 || h > 12 {
-			return 0, false
-		}
-		h %= 12
-	}
-	ms := h*3_600_000 + (int64(m1)*10+int64(m2))*60_000
-	if len(b) == 8 {
-		s1, s2 := b[6]-'0', b[7]-'0'
-		if b[5] != ':' || s1 > 5 || s2 > 9 {
-			return 0, false
-		}
-		ms += (int64(s1)*10 + int64(s2)) * 1000
-	}
-	return ms, true
-}
-
-var errOrder = fmt.Errorf("its dates can be read day first or month first")
-
-// settle decides, at the end of a file whose dates never went past 12, which
-// order they are in: the one in which the record goes on from midnight to
-// midnight while in the other it leaps by months.
-func (s *stampReader) settle(ms []int64) error {
-	if !s.slashed || s.order != orderUnknown || s.decided {
-		return nil
-	}
-	leaps := func(of func(int64) int64) (n, days int) {
-		for i := 1; i < len(ms); i++ {
-			a, b := of(ms[i-1]), of(ms[i])
-			if floorDiv(a, dayMS) == floorDiv(b, dayMS) {
-				continue
-			}
-			days++
-			if d := b - a; d > 20*dayMS || d < -20*dayMS {
-				n++
-			}
-		}
-		return n, days
-	}
-	asRead, days := leaps(func(x int64) int64 { return x })
-	swapped, _ := leaps(swapDayMonth)
-	switch {
-	case days >= 2 && asRead == 0 && swapped == days:
-		return nil
-	case days >= 2 && swapped == 0 && asRead == days:
-		for i := range ms {
-			ms[i] = swapDayMonth(ms[i])
-		}
-		return nil
-	}
-	return errOrder
-}
-
-func floorDiv(a, b int64) int64 {
-	q := a / b
-	if a%b < 0 {
-		q--
-	}
-	return q
-}
-
-// swapDayMonth reads a stamp the other way round. Both its day and its month are
-// at most 12.
-func swapDayMonth(ms int64) int64 {
-	day := floorDiv(ms, dayMS)
-	y, m, d := civilFromDays(day)
-	return ms + (daysFromCivil(y, d, m)-day)*dayMS
-}
-
-// civilFromDays is the inverse of daysFromCivil.
-func civilFromDays(z int64) (y, m, d int) {
-	z += 719468
-	era := floorDiv(z, 146097)
-	doe := z - era*146097
-	yoe := (doe - doe/1460 + doe/36524 - doe/146096) / 365
-	doy := doe - (365*yoe + yoe/4 - yoe/100)
-	mp := (5*doy + 2) / 153
-	d = int(doy - (153*mp+2)/5 + 1)
-	m = int(mp + 3)
-	if m > 12 {
-		m -= 12
-	}
-	y = int(yoe + era*400)
-	if m <= 2 {
-		y++
-	}
-	return y, m, d
 }

@@ -16,6 +16,8 @@ import (
 	"path"
 	"path/filepath"
 	"strings"
+	"sync"
+	"sync/atomic"
 
 	"dewledger/ingest/trend"
 )
@@ -107,6 +109,9 @@ type source struct {
 func (r *Result) Close() error {
 	var errs []error
 	for _, f := range r.files {
+		if f == nil {
+			continue
+		}
 		for _, ref := range []*fileRef{f.ref, f.spooled} {
 			if ref != nil && ref.spool != nil {
 				errs = append(errs, ref.spool.Close())
@@ -128,8 +133,13 @@ type input struct {
 // the files' heads, and decides which columns are which points. Errors of
 // configuration are *ConfigError, several of them joined; what is wrong with one
 // file or unit is that UnitSource's Err.
-func Read(ctx context.Context, o Options) (*Result, error) {
+func Read(ctx context.Context, o Options) (_ *Result, err error) {
 	r := &Result{}
+	defer func() {
+		if err != nil {
+			r.Close()
+		}
+	}()
 	in, err := findInput(ctx, o)
 	if err != nil {
 		return nil, err
@@ -145,11 +155,9 @@ func Read(ctx context.Context, o Options) (*Result, error) {
 	if r.from, r.to, err = period(o.From, o.To, r.cfg.site.Zone); err != nil {
 		return nil, err
 	}
-	for _, f := range in.files {
-		if err := ctx.Err(); err != nil {
-			return nil, err
-		}
-		r.files = append(r.files, sniffFile(ctx, f, r.cfg, in.trends))
+	r.sniffAll(ctx, in, o.Jobs)
+	if err := ctx.Err(); err != nil {
+		return nil, err
 	}
 	if w := r.cfg.weather; w != "" {
 		if err := r.weatherFile(ctx, o, in, w); err != nil {
@@ -163,10 +171,31 @@ func Read(ctx context.Context, o Options) (*Result, error) {
 	if n := len(in.ignored); n > 0 {
 		notes.addCount(n, "file-ignored", in.ignored[0], "", 0, "%s is not a trend file by its name and was not read", quote(in.ignored[0]))
 	}
-	r.plan(points, &notes)
+	if err := r.plan(points, &notes); err != nil {
+		return nil, err
+	}
 	r.siteNotes(&notes)
 	r.Notes = notes.list
 	return r, nil
+}
+
+// sniffAll reads the heads of all files, jobs at a time.
+func (r *Result) sniffAll(ctx context.Context, in *input, jobs int) {
+	r.files = make([]*source, len(in.files))
+	var next atomic.Int64
+	var wg sync.WaitGroup
+	for range min(max(jobs, 1), max(len(in.files), 1)) {
+		wg.Go(func() {
+			for ctx.Err() == nil {
+				i := int(next.Add(1)) - 1
+				if i >= len(in.files) {
+					return
+				}
+				r.files[i] = sniffFile(ctx, in.files[i], r.cfg, in.trends)
+			}
+		})
+	}
+	wg.Wait()
 }
 
 // findInput resolves the paths of the command line.

@@ -214,11 +214,11 @@ func wordValue(b []byte) (float64, bool) {
 	if isDigit(b[0]) || len(b) > 20 {
 		return 0, false
 	}
-	low := string(bytes.ToLower(b))
-	if v, ok := words[low]; ok {
+	low := bytes.ToLower(b)
+	if v, ok := words[string(low)]; ok {
 		return v, true
 	}
-	if r, ok := missingWords[low]; ok {
+	if r, ok := missingWords[string(low)]; ok {
 		return missing(r), true
 	}
 	return 0, false

@@ -5,7 +5,6 @@ import (
 	"encoding/binary"
 	"fmt"
 	"math"
-	"strings"
 	"time"
 
 	"github.com/apache/arrow/go/v17/parquet"
@@ -17,33 +16,6 @@ import (
 
 // parquetBatch is how many values are read at a time.
 const parquetBatch = 8 << 10
-
-// maxParquetRows bounds what a file's footer can make us allocate: 60 years of
-// 1 s data would be more.
-const maxParquetRows = 1 << 31
-
-// parquetShape is what the footer of a Parquet file says.
-type parquetShape struct {
-	header  []string
-	units   []string
-	timeCol int
-	timeIs  stampKind
-	rows    int64
-	order   order    // of dates written as text
-	refused []string // columns that are nested or of a type that is no reading, with why
-	usable  []bool
-}
-
-// stampKind is how a Parquet column holds times.
-type stampKind struct {
-	scale   float64 // ms a unit; 0: text
-	int96   bool
-	date    bool // whole days
-	zoned   bool
-	text    bool
-	epoch   bool // plain numbers since 1970
-	nothing bool
-}
 
 // guard runs f and turns a panic of the Parquet library on a corrupt file into
 // an error. The library panics on the caller's goroutine.
@@ -80,126 +52,6 @@ func within(ctx context.Context, limit time.Duration, f func(ctx context.Context
 	}
 }
 
-// sniffParquet reads the footer.
-func sniffParquet(ctx context.Context, f storedFile, timeColumn string) (*parquetShape, error) {
-	var sh *parquetShape
-	err := within(ctx, time.Minute, func(context.Context) error {
-		what := "footer"
-		return guard(&what, func() error {
-			r, err := file.NewParquetReader(f)
-			if err != nil {
-				return fmt.Errorf("not a whole Parquet file: %w", err)
-			}
-			s, err := shapeOf(r, timeColumn)
-			sh = s
-			return err
-		})
-	})
-	if err != nil {
-		return nil, err
-	}
-	return sh, nil
-}
-
-func shapeOf(r *file.Reader, timeColumn string) (*parquetShape, error) {
-	sc := r.MetaData().Schema
-	n := sc.NumColumns()
-	if n > maxColumns {
-		return nil, fmt.Errorf("it has %d columns; at most %d are read", n, maxColumns)
-	}
-	sh := &parquetShape{timeCol: -1, rows: r.NumRows(), header: make([]string, n), units: make([]string, n), usable: make([]bool, n)}
-	if sh.rows < 0 || sh.rows > maxParquetRows {
-		return nil, fmt.Errorf("its footer promises %d rows", sh.rows)
-	}
-	best := -1
-	for i := range n {
-		c := sc.Column(i)
-		sh.header[i] = c.Path()
-		if c.MaxRepetitionLevel() > 0 || len(c.ColumnPath()) > 1 {
-			sh.refused = append(sh.refused, fmt.Sprintf("%s is nested", quote(sh.header[i])))
-			continue
-		}
-		sh.usable[i] = c.PhysicalType() != parquet.Types.FixedLenByteArray
-		if !sh.usable[i] {
-			sh.refused = append(sh.refused, fmt.Sprintf("%s is of type %v", quote(sh.header[i]), c.PhysicalType()))
-			continue
-		}
-		_, sh.units[i] = splitHeaderUnit(sh.header[i])
-		k, score := stampKindOf(c)
-		named := timeNamed(sh.header[i])
-		if timeColumn != "" {
-			if !strings.EqualFold(sh.header[i], timeColumn) {
-				continue
-			}
-			score += 10
-		} else if score > 0 && named {
-			score += 2
-		}
-		if score == 1 && !named && timeColumn == "" { // a number or a text may be anything
-			continue
-		}
-		if score > best && score > 0 {
-			best, sh.timeCol, sh.timeIs = score, i, k
-		}
-	}
-	if sh.rows == 0 {
-		return nil, errNoRows
-	}
-	if sh.timeCol < 0 {
-		return nil, errNoTime
-	}
-	return sh, nil
-}
-
-// timeNamed reports whether a column's name says that it holds times.
-func timeNamed(name string) bool {
-	switch strings.Trim(strings.ToLower(strings.TrimSpace(name)), "_ ") {
-	case "time", "timestamp", "date", "datetime", "date_time", "date time", "date/time", "ts", "utc", "time_utc", "utc_time", "local_time", "timestamp_utc", "__index_level_0__", "index", "zeit", "datum", "zeitstempel", "datum/zeit", "fecha", "fecha/hora", "fecha hora", "horodatage", "heure":
-		return true
-	}
-	low := strings.ToLower(name)
-	return strings.Contains(low, "timestamp") || strings.Contains(low, "datetime") || strings.HasPrefix(low, "date/time")
-}
-
-// stampKindOf is how a column would hold times, and how sure that is: 3 a
-// timestamp, 2 a date, 1 text or a number.
-func stampKindOf(c *schema.Column) (stampKind, int) {
-	perUnit := func(u schema.TimeUnitType) float64 {
-		switch u {
-		case schema.TimeUnitMicros:
-			return 1e-3
-		case schema.TimeUnitNanos:
-			return 1e-6
-		}
-		return 1
-	}
-	switch lt := c.LogicalType().(type) {
-	case schema.TimestampLogicalType:
-		return stampKind{scale: perUnit(lt.TimeUnit()), zoned: lt.IsAdjustedToUTC()}, 3
-	case *schema.TimestampLogicalType:
-		return stampKind{scale: perUnit(lt.TimeUnit()), zoned: lt.IsAdjustedToUTC()}, 3
-	case schema.DateLogicalType, *schema.DateLogicalType:
-		return stampKind{scale: dayMS, date: true}, 2
-	}
-	switch c.ConvertedType() {
-	case schema.ConvertedTypes.TimestampMillis:
-		return stampKind{scale: 1, zoned: true}, 3
-	case schema.ConvertedTypes.TimestampMicros:
-		return stampKind{scale: 1e-3, zoned: true}, 3
-	case schema.ConvertedTypes.Date:
-		return stampKind{scale: dayMS, date: true}, 2
-	}
-	switch c.PhysicalType() {
-	case parquet.Types.Int96:
-		return stampKind{int96: true, scale: 1, zoned: true}, 3
-	case parquet.Types.ByteArray:
-		return stampKind{text: true}, 1
-	case parquet.Types.Int64, parquet.Types.Double, parquet.Types.Int32:
-		return stampKind{epoch: true, zoned: true}, 1
-	}
-	return stampKind{nothing: true}, 0
-}
-
 // readParquet reads the wanted columns of a file.
 func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShape, wanted []int) (*rawTable, error) {
 	limit := 2*time.Minute + time.Duration(sh.rows)*20*time.Microsecond
@@ -232,6 +84,8 @@ type parquetReader struct {
 	text stampReader
 	bad  badCell
 
+	stampIs stampKind
+
 	f64 []float64
 	f32 []float32
 	i64 []int64
@@ -245,10 +99,31 @@ func (p *parquetReader) table(wanted []int) (*rawTable, error) {
 	t := &rawTable{cols: make([][]float64, len(wanted)), unit: make([]string, len(wanted))}
 	rows := int(p.r.NumRows())
 	// Grow with what is read, not with what a footer promises.
-	stamps := make([]float64, 0, min(rows, 1<<20))
-	stamps, err := p.column(p.sh.timeCol, stamps, p.stampValues)
+	size := min(rows, 1<<20)
+	p.text.order, p.stampIs = p.sh.order, p.sh.timeIs
+	stamps, err := p.column(p.sh.timeCol, make([]float64, 0, size), p.stampValues)
 	if err != nil {
 		return nil, err
+	}
+	if p.text.slashed && p.sh.order == orderUnknown && p.text.order == dayFirst {
+		// A later date settled the order: the earlier ones are to be read again.
+		p.text = stampReader{order: dayFirst}
+		if stamps, err = p.column(p.sh.timeCol, stamps[:0], p.stampValues); err != nil {
+			return nil, err
+		}
+	}
+	if p.sh.clock >= 0 {
+		p.stampIs = p.sh.clockIs
+		ofDay, err := p.column(p.sh.clock, make([]float64, 0, size), p.stampValues)
+		if err != nil {
+			return nil, err
+		}
+		if len(ofDay) != len(stamps) {
+			return nil, fmt.Errorf("columns %s and %s have different numbers of rows", quote(p.sh.header[p.sh.timeCol]), quote(p.sh.header[p.sh.clock]))
+		}
+		for i := range stamps {
+			stamps[i] += ofDay[i]
+		}
 	}
 	var drop []bool
 	t.ms = make([]int64, len(stamps))
@@ -316,7 +191,7 @@ func compact(v []float64, drop []bool) []float64 {
 
 // column appends all of a column, row group by row group, nulls as missing. get
 // appends up to n values of a chunk with their definition levels.
-func (p *parquetReader) column(c int, dst []float64, get func(c int, cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error)) ([]float64, error) {
+func (p *parquetReader) column(c int, dst []float64, get func(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error)) ([]float64, error) {
 	for g := range p.r.NumRowGroups() {
 		*p.what = fmt.Sprintf("row group %d, column %s", g, quote(p.sh.header[c]))
 		rg := p.r.RowGroup(g)
@@ -330,7 +205,7 @@ func (p *parquetReader) column(c int, dst []float64, get func(c int, cr file.Col
 				return nil, err
 			}
 			var n int64
-			if dst, n, err = get(c, cr, dst); err != nil {
+			if dst, n, err = get(cr, dst); err != nil {
 				return nil, fmt.Errorf("%s: %w", *p.what, err)
 			}
 			if n <= 0 {
@@ -378,7 +253,7 @@ func sized[T any](b []T) []T {
 }
 
 // values reads one batch as readings.
-func (p *parquetReader) values(c int, cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
+func (p *parquetReader) values(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
 	return p.batch(cr, dst, finite, func(b parquet.ByteArray) float64 {
 		x := parseCell(b, '.')
 		if x.val != x.val {
@@ -394,8 +269,8 @@ func (p *parquetReader) values(c int, cr file.ColumnChunkReader, dst []float64) 
 }
 
 // stampValues reads one batch as ms since 1970.
-func (p *parquetReader) stampValues(c int, cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
-	k := p.sh.timeIs
+func (p *parquetReader) stampValues(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
+	k := p.stampIs
 	num := func(v float64) float64 { return math.Floor(v * k.scale) }
 	if k.epoch {
 		num = epochMS
@@ -458,14 +333,16 @@ func (p *parquetReader) batch(cr file.ColumnChunkReader, dst []float64, num func
 		if err != nil {
 			return dst, n, err
 		}
-		return spread(p, cr, dst, p.i64, n, k, func(v int64) float64 { return num(float64(v) * decimalScale(cr)) }), n, nil
+		unit := decimalScale(cr)
+		return spread(p, cr, dst, p.i64, n, k, func(v int64) float64 { return num(float64(v) / unit) }), n, nil
 	case *file.Int32ColumnChunkReader:
 		p.i32 = sized(p.i32)
 		n, k, err := r.ReadBatch(parquetBatch, p.i32, p.def, nil)
 		if err != nil {
 			return dst, n, err
 		}
-		return spread(p, cr, dst, p.i32, n, k, func(v int32) float64 { return num(float64(v) * decimalScale(cr)) }), n, nil
+		unit := decimalScale(cr)
+		return spread(p, cr, dst, p.i32, n, k, func(v int32) float64 { return num(float64(v) / unit) }), n, nil
 	case *file.BooleanColumnChunkReader:
 		p.bit = sized(p.bit)
 		n, k, err := r.ReadBatch(parquetBatch, p.bit, p.def, nil)
@@ -499,13 +376,13 @@ func (p *parquetReader) batch(cr file.ColumnChunkReader, dst []float64, num func
 	return dst, 0, fmt.Errorf("columns of type %v are not read", cr.Type())
 }
 
-// decimalScale is the factor of a DECIMAL column stored as integers, else 1.
+// decimalScale is the divisor of a DECIMAL column stored as integers, else 1.
 func decimalScale(cr file.ColumnChunkReader) float64 {
 	switch lt := cr.Descriptor().LogicalType().(type) {
 	case schema.DecimalLogicalType:
-		return math.Pow10(-int(lt.Scale()))
+		return math.Pow10(int(lt.Scale()))
 	case *schema.DecimalLogicalType:
-		return math.Pow10(-int(lt.Scale()))
+		return math.Pow10(int(lt.Scale()))
 	}
 	return 1
 }

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"errors"
 	"fmt"
 	"path"
 	"sort"
@@ -37,8 +38,9 @@ type unitPlan struct {
 	loose []binding
 }
 
-// plan decides which columns are which points of which units.
-func (r *Result) plan(points []*point, notes *notebook) {
+// plan decides which columns are which points of which units. It fails where the
+// schedule gives one role of a unit to two columns of a file.
+func (r *Result) plan(points []*point, notes *notebook) error {
 	units := map[string]*unitPlan{}
 	unit := func(name string) *unitPlan {
 		u := units[name]
@@ -50,6 +52,13 @@ func (r *Result) plan(points []*point, notes *notebook) {
 	}
 	var shared, unused []binding
 	byFile := make([]bool, len(r.files)) // the schedule speaks of the file
+	type claim struct {
+		unit string
+		role trend.Role
+		file int
+	}
+	claims := map[claim]*point{}
+	var errs []error
 	for i, f := range r.files {
 		if f.err != nil {
 			continue
@@ -64,6 +73,15 @@ func (r *Result) plan(points []*point, notes *notebook) {
 				}
 				p.matches++
 				byFile[i] = true
+				if p.role != trend.NoRole {
+					k := claim{p.unit, p.role, i}
+					if first, twice := claims[k]; twice {
+						errs = append(errs, &ConfigError{File: r.PointsFile, Line: p.line, Field: "role", Hint: "a unit has one point a role; give the other the role -",
+							Msg: fmt.Sprintf("%s of unit %s is mapped here and on line %d, and %s has both columns", p.role, quote(p.unit), first.line, quote(f.ref.name))})
+						continue
+					}
+					claims[k] = p
+				}
 				b := r.scheduled(i, c, p)
 				switch {
 				case p.role == trend.NoRole:
@@ -77,6 +95,9 @@ func (r *Result) plan(points []*point, notes *notebook) {
 				}
 			}
 		}
+	}
+	if len(errs) > 0 {
+		return errors.Join(errs...)
 	}
 	var free []int
 	for i, f := range r.files {
@@ -99,6 +120,7 @@ func (r *Result) plan(points []*point, notes *notebook) {
 		}
 	}
 	r.finish(units, shared, unused)
+	return nil
 }
 
 func (r *Result) scheduled(file, col int, p *point) binding {
@@ -225,7 +247,7 @@ func (r *Result) finish(units map[string]*unitPlan, shared, unused []binding) {
 	inUse := map[int]bool{}
 	for _, n := range names {
 		u := units[n]
-		u.binds, u.loose = r.settleUnit(u)
+		u.binds, u.loose = r.settle(u.binds)
 		have := map[trend.Role]bool{}
 		files := map[int]bool{}
 		for _, b := range u.binds {
@@ -273,12 +295,6 @@ func (r *Result) finish(units map[string]*unitPlan, shared, unused []binding) {
 		us[i], ps[i] = r.Units[j], r.plans[j]
 	}
 	r.Units, r.plans = us, ps
-}
-
-// settleUnit settles scheduled and guessed columns: what the schedule says is
-// not in question, though two files may hold a point's earlier and later part.
-func (r *Result) settleUnit(u *unitPlan) (kept, open []binding) {
-	return r.settle(u.binds)
 }
 
 func (r *Result) plant(name string) trend.Plant {

@@ -53,6 +53,17 @@ func guessRole(name, unit string, sm sample) guess {
 			traits |= traitOfUnit(u)
 		}
 	}
+	if known && traits&tFan != 0 && traits&(tStatus|tCommand|tSpeed|tPower|tC|tS|tFlow|tPressure|tTemp) == 0 {
+		switch u.Dim { // a fan in kW is its power, in percent its speed
+		case Power:
+			traits |= tPower
+		case Ratio:
+			traits |= tSpeed
+		case Flow:
+			traits |= tFlow
+		}
+	}
+	measuredPos := traits&(tPosition|tCommand|tFeedback) == tPosition || (traits&(tCommand|tFeedback|tOutput) == 0 && strings.Contains(strings.ToLower(name), "sensor"))
 	best := guess{}
 	for _, p := range patterns {
 		if traits&p.need != p.need || traits&^(p.need|p.may) != 0 {
@@ -61,7 +72,7 @@ func guessRole(name, unit string, sm sample) guess {
 		score := fullScore - p.cost - wordCost*unknown
 		switch {
 		case score > best.score:
-			best = guess{role: p.role, score: score, pos: traits&tPosition != 0 && traits&(tCommand|tFeedback) == 0}
+			best = guess{role: p.role, score: score, pos: measuredPos}
 		case score == best.score && p.role != best.role:
 			best.open = append(best.open, p.role)
 		}

@@ -111,7 +111,7 @@ func (s *source) sniffParquet(ctx context.Context, cfg *siteConfig) error {
 		return err
 	}
 	s.pq.order = cfg.order
-	s.header, s.units, s.timeCol = s.pq.header, s.pq.units, s.pq.timeCol
+	s.header, s.units, s.timeCol, s.clock = s.pq.header, s.pq.units, s.pq.timeCol, s.pq.clock
 	s.samples = make([]sample, len(s.header))
 	for _, what := range s.pq.refused {
 		s.notes.add("column-refused", s.ref.name, "", 0, "column %s and is not read", what)
