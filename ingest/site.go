@@ -42,7 +42,6 @@ type siteConfig struct {
 	plants      map[string]trend.Plant
 	plantLine   map[string]int
 	settings    map[string]map[string]map[string]Setting // unit, rule, parameter; "enabled" for the rule itself
-	rulesOf     map[string]map[string]trend.RuleSetting
 }
 
 // seaLevel is the standard atmosphere's pressure at sea level, Pa (ISO
@@ -77,7 +76,7 @@ func readSite(file string, text []byte) (*siteConfig, error) {
 	}
 	c := defaultConfig()
 	c.plants, c.plantLine = map[string]trend.Plant{}, map[string]int{}
-	c.settings, c.rulesOf = map[string]map[string]map[string]Setting{}, map[string]map[string]trend.RuleSetting{}
+	c.settings = map[string]map[string]map[string]Setting{}
 	root := d.table(nil, d.root)
 	if t, ok := root.sub("site"); ok {
 		c.readSiteTable(t)
