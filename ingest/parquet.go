@@ -4,6 +4,7 @@ import (
 	"context"
 	"encoding/binary"
 	"fmt"
+	"io"
 	"math"
 	"time"
 
@@ -52,11 +53,20 @@ func within(ctx context.Context, limit time.Duration, f func(ctx context.Context
 	}
 }
 
+// patience is how long a file may take: 20 s, and a second for every megabyte,
+// a hundredth of the usual speed.
+func patience(f io.Seeker) time.Duration {
+	size, err := f.Seek(0, io.SeekEnd)
+	if err != nil {
+		size = 0
+	}
+	return 20*time.Second + time.Duration(size>>20)*time.Second
+}
+
 // readParquet reads the wanted columns of a file.
 func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShape, wanted []int) (*rawTable, error) {
-	limit := 2*time.Minute + time.Duration(sh.rows)*20*time.Microsecond
 	var out *rawTable
-	err := within(ctx, limit, func(ctx context.Context) error {
+	err := within(ctx, patience(f), func(ctx context.Context) error {
 		what := "footer"
 		return guard(&what, func() error {
 			r, err := file.NewParquetReader(f)

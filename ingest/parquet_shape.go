@@ -4,7 +4,6 @@ import (
 	"context"
 	"fmt"
 	"strings"
-	"time"
 
 	"github.com/apache/arrow/go/v17/parquet"
 	"github.com/apache/arrow/go/v17/parquet/file"
@@ -43,7 +42,7 @@ type stampKind struct {
 // sniffParquet reads the footer.
 func sniffParquet(ctx context.Context, f storedFile, timeColumn string) (*parquetShape, error) {
 	var sh *parquetShape
-	err := within(ctx, time.Minute, func(context.Context) error {
+	err := within(ctx, patience(f), func(context.Context) error {
 		what := "footer"
 		return guard(&what, func() error {
 			r, err := file.NewParquetReader(f)
