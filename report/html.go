@@ -146,7 +146,7 @@ func viewOf(r UnitReport) unitPage {
 		Zone:   zone.String(), Factor: strconv.FormatFloat(s.Factor, 'g', -1, 64), Assumed: r.Assumed, Measure: m.String(),
 		BooksMoist: m.Label("g/kg"), BooksEnergy: m.Label("kJ/kg"),
 	}
-	v.Lead = leadOf(s)
+	v.Lead = leadOf(s, m)
 	v.Total = totalOf(s)
 	cautions := map[finding.Caution]bool{}
 	for i := range s.Findings {
@@ -232,7 +232,7 @@ func titleOf(s *finding.Set, rule string) string {
 
 // leadOf is the first screen in sentences: what is wrong, how sure, what it
 // costs, and what could not be seen.
-func leadOf(s *finding.Set) []string {
+func leadOf(s *finding.Set, m finding.Measure) []string {
 	var passed, untested int
 	for _, c := range s.Coverage {
 		switch c.Verdict {
@@ -248,11 +248,13 @@ func leadOf(s *finding.Set) []string {
 		out = append(out, "Nothing was found wrong with this unit in what this period could show.")
 	default:
 		f := &s.Findings[0]
-		out = append(out, fmt.Sprintf("%s %s to be looked at; the first is this: %s", capital(inWords(n)), plural(n, "thing needs", "things need"), lowerFirst(titleOf(s, f.Rule))+
-			fmt.Sprintf(" (priority %s, confidence %s %%).", f.Priority, finding.Significant(100*f.Confidence, 2))))
+		out = append(out, fmt.Sprintf("%s %s to be looked at. The first: %s, by %s (priority %s, confidence %s).", capital(inWords(n)), plural(n, "thing needs", "things need"),
+			lowerFirst(titleOf(s, f.Rule)), m.PlusMinus(f.Magnitude, f.Uncertainty, f.UnitOf), f.Priority, confidenceInWords(f.Confidence)))
 	}
 	if t := totalOf(s); t != "" {
 		out = append(out, t)
+	} else if len(s.Findings) > 0 {
+		out = append(out, "No waste can be put in kilowatt-hours for what was found: it is a matter of sensors, moisture or safety, or the air flow is not known.")
 	}
 	out = append(out, fmt.Sprintf("Of %d rules, %d passed and %d could not be tested on this period: see what was tested.", len(s.Coverage), passed, untested))
 	return out
@@ -268,6 +270,17 @@ func totalOf(s *finding.Set) string {
 		text += fmt.Sprintf(", %s %s", finding.Range(t.Cost, t.CostLow, t.CostHigh), s.Currency)
 	}
 	return text + "; no kilowatt-hour is counted twice."
+}
+
+// confidenceInWords never claims certainty.
+func confidenceInWords(p float64) string {
+	switch {
+	case p > 0.99:
+		return "over 99 %"
+	case p < 0.01:
+		return "under 1 %"
+	}
+	return finding.Significant(100*p, 2) + " %"
 }
 
 func inWords(n int) string {
@@ -306,7 +319,7 @@ func findingOf(r UnitReport, f *finding.Finding, i int) findingView {
 		Effect: m.PlusMinus(f.Magnitude, f.Uncertainty, f.UnitOf), Matters: m.Value(f.Matters, f.UnitOf, 2),
 		Hours:      fmt.Sprintf("%s of %s hours tested", finding.Significant(f.FaultHours, 3), finding.Significant(f.TestedHours, 3)),
 		Days:       fmt.Sprintf("%s to %s", f.Start.In(u.Site.Zone).Format("2 January 15:04"), f.End.In(u.Site.Zone).Format("2 January 15:04")),
-		Confidence: finding.Significant(100*f.Confidence, 2) + " %",
+		Confidence: confidenceInWords(f.Confidence),
 		Suspects:   suspectsInWords(f.Suspects), Checks: f.Checks, Lookalikes: f.Lookalikes,
 		What: f.Trace.What, Formula: f.Trace.Formula, Worked: f.Trace.Worked,
 	}
@@ -493,6 +506,16 @@ func reasonInWords(reason string) string {
 	return capital(rest) + "."
 }
 
+func shiftInWords(x float64) string {
+	switch {
+	case x > 0:
+		return fmt.Sprintf(" plus %.6g", x)
+	case x < 0:
+		return fmt.Sprintf(" less %.6g", -x)
+	}
+	return ""
+}
+
 func pointsOf(u *trend.Unit) []pointRow {
 	var out []pointRow
 	for _, r := range u.Roles() {
@@ -511,7 +534,7 @@ func pointsOf(u *trend.Unit) []pointRow {
 			p.By = "points schedule"
 		}
 		if c.Source.Scale != 0 && c.Source.Scale != 1 || c.Source.Shift != 0 {
-			p.Note = strings.TrimSpace(fmt.Sprintf("scaled by %v, shifted by %v. %s", c.Source.Scale, c.Source.Shift, p.Note))
+			p.Note = strings.TrimSpace(fmt.Sprintf("In SI: %.6g times the value in the file%s. %s", c.Source.Scale, shiftInWords(c.Source.Shift), p.Note))
 		}
 		out = append(out, p)
 	}

@@ -165,7 +165,9 @@ func psychroChart(id string, b *balance.Books, k float64, m finding.Measure) (ch
 		if haveO && haveR && u.Plant.In(trend.Mixing) {
 			dc.StrokeLines(stroke(inkText, 0.7, dashes(3, 3)), []vg.Point{at(o.t, o.w), at(r.t, r.w)})
 		}
-		if x, ok := byStation[trend.Mixed]; ok {
+		if haveO && !u.Plant.In(trend.Mixing) {
+			path = append(path, o)
+		} else if x, ok := byStation[trend.Mixed]; ok {
 			path = append(path, x)
 		} else if t, w := b.MixtureTemp(), b.MixtureHumRatio(); t != nil && w != nil {
 			mt, mw := t.Mean(0, u.Axis.N, where), w.Mean(0, u.Axis.N, where)
