@@ -39,7 +39,7 @@ var demoUnits = []demoUnit{
 	{serves: "Laboratory", train: labTrain, allDay: true, coils: map[trend.Component]string{trend.Preheat: "steam"},
 		fault: Fault{Kind: CoilLeak, At: trend.Preheat, Severity: 2.5}, from: 0.5},
 	{serves: "Entrance hall", train: plainTrain},
-	{serves: "Lecture hall", train: plainTrain, fault: Fault{Kind: RunsAtNight, Severity: 0.8}, to: 0.75},
+	{serves: "Assembly hall", train: plainTrain, fault: Fault{Kind: RunsAtNight, Severity: 0.8}, to: 0.75},
 
 	{serves: "Offices, second floor", train: officeTrain, variable: true, fault: Fault{Kind: CoolValvePasses, Severity: 0.4}},
 	{serves: "Library", train: officeTrain, variable: true},
