@@ -279,12 +279,19 @@ func calendarChart(id string, u *trend.Unit, f *finding.Finding, flagged func(i 
 	p.Add(plotFunc(func(dc draw.Canvas, p *plot.Plot) {
 		tx, ty := p.Transforms(&dc)
 		for d := range days {
-			for h := range 48 {
+			for h := 0; h < 48; {
 				s, ok := cells[[2]int{d, h}]
 				if !ok {
+					h++
 					continue
 				}
-				x0, x1, y0, y1 := tx(float64(d)+0.06), tx(float64(d)+0.94), ty(float64(h)/2), ty(float64(h+1)/2)
+				// Half hours alike are one mark.
+				end := h + 1
+				for end < 48 && cells[[2]int{d, end}] == s {
+					end++
+				}
+				x0, x1, y0, y1 := tx(float64(d)+0.06), tx(float64(d)+0.94), ty(float64(h)/2), ty(float64(end)/2)
+				h = end
 				fill := inkTested
 				if s.flagged {
 					fill = inkEffect

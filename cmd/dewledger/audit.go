@@ -226,6 +226,9 @@ func join(words []string) string {
 // sayNotes warns of what the input lost or left open: the sum, or with verbose
 // every note.
 func sayNotes(p progress, in *ingest.Result, units []audited, verbose bool) {
+	if !in.ScheduleUsed {
+		p.say("there is no points schedule: columns were mapped by name and unit; the report's data section shows how")
+	}
 	n := len(in.Notes)
 	all := in.Notes
 	for _, u := range units {
