@@ -217,7 +217,10 @@ func viewOf(r UnitReport) unitPage {
 }
 
 // quantity words a parameter in its unit.
-func quantity(m finding.Measure, x float64, unit string) string { return m.Value(x, unit, 3) }
+func quantity(m finding.Measure, x float64, unit string) string {
+	v, label := m.Convert(x, unit)
+	return strings.TrimSpace(strconv.FormatFloat(v, 'g', 4, 64) + " " + label)
+}
 
 func anchorOf(i int) string { return fmt.Sprintf("f%d", i+1) }
 

@@ -3,6 +3,7 @@ package rules
 import (
 	"fmt"
 	"sort"
+	"strconv"
 	"strings"
 
 	"dewledger/ingest/trend"
@@ -68,7 +69,7 @@ func wrap(text, indent string) string {
 	return b.String()
 }
 
-func num(x float64) string { return finding.Significant(x, 3) }
+func num(x float64) string { return strconv.FormatFloat(x, 'g', 4, 64) }
 
 func unitWord(u string) string {
 	switch u {

@@ -28,7 +28,7 @@ func (c *common) register(fs *pflag.FlagSet) {
 	fs.Float64Var(&c.factor, "coverage-factor", 2, "k: every ± is this many standard uncertainties")
 	fs.IntVar(&c.jobs, "jobs", 0, "units at once (default: all cores)")
 	fs.BoolVar(&c.ledger, "ledger", false, "also write every interval's balances, as Parquet")
-	fs.BoolVar(&c.quiet, "quiet", false, "no progress and no warnings")
+	fs.BoolVar(&c.quiet, "quiet", false, "print nothing but errors")
 	fs.BoolVar(&c.verbose, "verbose", false, "every note about the input, one a line")
 }
 
