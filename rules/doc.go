@@ -7,7 +7,6 @@ import (
 	"strings"
 
 	"dewledger/ingest/trend"
-	"dewledger/rules/finding"
 )
 
 //go:generate go run gen.go
