@@ -1,6 +1,7 @@
 package rules
 
 import (
+	"math"
 	"slices"
 	"time"
 
@@ -54,6 +55,7 @@ var moistureGainInCoolingCoil = &Rule{
 			return p.None("the train has no cooling coil")
 		}
 		applies := and(p.Settled(), lasting(p.Running(trend.Cooling), p.Axis().Intervals(time.Hour)), p.Shut(trend.Humidify))
+		dry := p.Dry()
 		var out []Evidence
 		for _, q := range p.Parts(balance.MoistureGain) {
 			if !slices.Contains(q.Between, trend.Cooling) {
@@ -64,6 +66,11 @@ var moistureGainInCoolingCoil = &Rule{
 				Suspects: []string{string(trend.Cooling)}, Readings: q.Readings, From: q.From.Title(), To: q.To.Title(),
 				What: "moisture gained between " + q.From.Title() + " and " + q.To.Title(), Terms: moistureTerms(p, q),
 				Blind: "the streams' moisture or their mixture could not be told",
+			}
+			// A gain that shows with the coil dry as well has another cause first.
+			if m := q.Mean(0, p.N(), dry); float64(m.N)*p.Axis().Hours() >= leastTested && m.Val > math.Max(p.Param(Matters), p.Factor()*m.U()) {
+				e.Elsewhere = true
+				e.Says = p.rule.Doc.Says + " The air gained as much while the coil was dry, so look for another cause first."
 			}
 			for _, role := range q.Readings {
 				if role.Kind() != trend.Temperature && role.Kind() != trend.AirFlow {

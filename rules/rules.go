@@ -103,6 +103,7 @@ type Evidence struct {
 	Readings  []trend.Role
 	Terms     []Term                           // for the worked figures
 	What      string                           // what Effect is, in words
+	Elsewhere bool                             // the same effect shows where this cause cannot be at work: the finding stands a step lower
 	Short     string                           // why silence here would be no pass although something was tested; empty: it would be
 	Blind     string                           // why an effect may be missing although the question applied, in words
 	Says      string                           // replaces Doc.Says where the place changes the sentence

@@ -344,6 +344,9 @@ func describe(p *Pass, r *ruling, opt Options, t *tally) finding.Finding {
 		energyShare = nz(f.Energy.KWh) / all
 	}
 	f.Priority = priority(rule.Harm, &f, float64(flaggedDays)/math.Max(1, float64(testedDays)), energyShare)
+	if e.Elsewhere && f.Priority > finding.Low {
+		f.Priority--
+	}
 	says := rule.Doc.Says
 	if e.Says != "" {
 		says = e.Says
