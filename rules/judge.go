@@ -42,6 +42,7 @@ const (
 	splitGap    = time.Hour        // a reported span is cut at a longer gap of any kind
 	leastTested = 3.0              // hours below which nothing passes
 	quantile95  = 1.645
+	hurry       = 1.5 // times its expanded uncertainty: an effect less sure than this is never high or urgent
 	passFactor  = 2.0 // a pass claims that this many times what matters would have been seen
 )
 
@@ -423,8 +424,11 @@ func priority(h Harm, f *finding.Finding, dayShare, energyShare float64) finding
 	case Bookkeeping:
 		p = finding.Low
 	}
-	if f.Confidence < 0.6 && p > finding.Low {
-		p-- // more likely than not is not enough to hurry for
+	// Two standard uncertainties are reached by chance on one healthy unit in
+	// forty, and a fleet has many: to be hurried for, an effect has to stand at half
+	// as much again.
+	if (f.Confidence < 0.6 || f.Magnitude < hurry*f.Uncertainty) && p > finding.Low {
+		p = min(p, finding.High) - 1
 	}
 	return p
 }

@@ -154,6 +154,7 @@ func TestChainKeepsRawFlags(t *testing.T) {
 func TestPriority(t *testing.T) {
 	sure := &finding.Finding{Confidence: 0.9, Magnitude: 2, Uncertainty: 0.5, Matters: 1}
 	unsure := &finding.Finding{Confidence: 0.5, Magnitude: 2, Uncertainty: 1.5, Matters: 1}
+	barely := &finding.Finding{Confidence: 0.9, Magnitude: 2.4, Uncertainty: 2, Matters: 1}
 	for _, c := range []struct {
 		h           Harm
 		f           *finding.Finding
@@ -161,6 +162,7 @@ func TestPriority(t *testing.T) {
 		want        finding.Priority
 	}{
 		{Freezes, unsure, 0, 0, finding.Urgent},
+		{Wastes, barely, 0.9, 0.2, finding.Medium},
 		{Wets, sure, 0, 0, finding.Urgent},
 		{Wets, unsure, 0, 0, finding.Medium},
 		{Wastes, sure, 0.9, 0.01, finding.High},
