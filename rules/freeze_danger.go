@@ -33,7 +33,7 @@ var freezeDanger = &Rule{
 			if !ok {
 				return nil
 			}
-			return []balance.Need{{What: "temperature of " + st.Title(), AnyOf: [][]trend.Role{{tempRole(st)}}}}
+			return []balance.Need{{What: "temperature of " + st.Title(), AnyOf: [][]trend.Role{{st.DryBulb()}}}}
 		},
 		State: true,
 	},
@@ -59,7 +59,7 @@ var freezeDanger = &Rule{
 		if !ok {
 			return p.None("the train has no water coil")
 		}
-		role := tempRole(st)
+		role := st.DryBulb()
 		t := p.Reading(role)
 		return []Evidence{{
 			Component: role.String(), Effect: t.Scaled("freeze_danger", "K", -1, p.Param("limit")), Applies: p.FanOn(), Ungated: true,
@@ -97,22 +97,4 @@ func firstWaterCoil(pl *trend.Plant) (trend.Station, bool) {
 		}
 	}
 	return trend.NoStation, false
-}
-
-func tempRole(s trend.Station) trend.Role {
-	switch s {
-	case trend.Outdoor:
-		return trend.OATemp
-	case trend.Recovered:
-		return trend.RETemp
-	case trend.Mixed:
-		return trend.MATemp
-	case trend.AfterPreheat:
-		return trend.PHTemp
-	case trend.AfterCooling:
-		return trend.CCTemp
-	case trend.AfterHeating:
-		return trend.HCTemp
-	}
-	return trend.SATemp
 }

@@ -70,7 +70,7 @@ var rhImpossible = &Rule{
 			}
 			air := p.b.Air()
 			ceiling := air.HumRatioDewPoint(limit)
-			temp := p.Col(tempAt(role))
+			temp := p.Col(role.Station().DryBulb())
 			zero := make([]float64, p.N())
 			s := &balance.Series{Name: role.String() + "_beyond", Unit: "%", Val: make([]float64, p.N()), Off: zero, Noise: make([]float64, p.N())}
 			for i, x := range rh.Val {
@@ -84,7 +84,7 @@ var rhImpossible = &Rule{
 			}
 			out = append(out, Evidence{
 				Component: role.String(), Effect: s, Applies: applies,
-				Suspects: []string{role.String()}, Readings: []trend.Role{role, tempAt(role)},
+				Suspects: []string{role.String()}, Readings: []trend.Role{role, role.Station().DryBulb()},
 				What:  "reading beyond the nearest humidity that air can have, less the sensor's accuracy",
 				Terms: []Term{{"reading", "%", scaled(rh.Val, 100)}},
 			})
@@ -92,22 +92,6 @@ var rhImpossible = &Rule{
 		return out
 	},
 	Cautions: []finding.Caution{finding.Isolate},
-}
-
-func tempAt(role trend.Role) trend.Role {
-	switch role.Station() {
-	case trend.Outdoor:
-		return trend.OATemp
-	case trend.Return:
-		return trend.RATemp
-	case trend.Mixed:
-		return trend.MATemp
-	case trend.AfterCooling:
-		return trend.CCTemp
-	case trend.Recovered:
-		return trend.RETemp
-	}
-	return trend.SATemp
 }
 
 func always(n int) []bool {

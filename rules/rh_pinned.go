@@ -70,7 +70,7 @@ var rhPinned = &Rule{
 			}
 			// A resolution finer than a tenth of a percent is the file's, not the sensor's.
 			step := math.Max(c.Resolution, 0.001)
-			temp := p.Col(tempAt(role))
+			temp := p.Col(role.Station().DryBulb())
 			warmed := func(i, j int) bool { return moved(temp, counted, i, j) >= swingT }
 			others := func(i, j int) bool {
 				for _, o := range humidityRoles {
@@ -95,7 +95,7 @@ var rhPinned = &Rule{
 			e := standstill(p, role.String()+"_still", c.Val, counted, found, sees)
 			e.Component = role.String()
 			e.Suspects = []string{role.String(), "logger"}
-			e.Readings = []trend.Role{role, tempAt(role)}
+			e.Readings = []trend.Role{role, role.Station().DryBulb()}
 			e.What = "hours for which the reading stood still"
 			e.Terms = []Term{{"reading", "%", scaled(c.Val, 100)}, {"temperature there", "degC", temp}}
 			out = append(out, e)

@@ -220,6 +220,32 @@ var stations = [NumStations]struct{ code, title string }{
 // String is the station's two-letter code.
 func (s Station) String() string { return stations[s].code }
 
+// DryBulb is the role of the dry-bulb temperature at the station, NoRole where
+// there is none.
+func (s Station) DryBulb() Role {
+	switch s {
+	case Outdoor:
+		return OATemp
+	case Recovered:
+		return RETemp
+	case Return:
+		return RATemp
+	case Mixed:
+		return MATemp
+	case AfterPreheat:
+		return PHTemp
+	case AfterCooling:
+		return CCTemp
+	case AfterHeating:
+		return HCTemp
+	case Supply:
+		return SATemp
+	case Weather:
+		return WXTemp
+	}
+	return NoRole
+}
+
 // Title is the station in words.
 func (s Station) Title() string { return stations[s].title }
 

@@ -29,6 +29,14 @@ func TestRolesAreComplete(t *testing.T) {
 	}
 }
 
+func TestDryBulbIsAtItsStation(t *testing.T) {
+	for s := Outdoor; s < NumStations; s++ {
+		if r := s.DryBulb(); r != NoRole && (r.Station() != s || r.Kind() != Temperature) {
+			t.Errorf("the dry bulb of %v is %s", s, r)
+		}
+	}
+}
+
 func TestAxis(t *testing.T) {
 	start := time.Date(2026, 3, 2, 0, 0, 0, 0, time.UTC)
 	a := Axis{Start: start, Step: 5 * time.Minute, N: 12}

@@ -6,7 +6,7 @@ import (
 
 // Temp is a station's dry-bulb temperature, degC; nil where it is not measured.
 func (b *Books) Temp(s trend.Station) *Series {
-	if r := tempRole(s); r != trend.NoRole {
+	if r := s.DryBulb(); r != trend.NoRole {
 		return b.Reading(r)
 	}
 	return nil
@@ -56,7 +56,7 @@ func (b *Books) DewPoint(s trend.Station) *Series {
 
 // temp is a station's temperature as a form, nil where it is not read.
 func (b *Books) tempForm(s trend.Station) *form {
-	return b.temp[s].get(func() *form { return b.reading(tempRole(s)) })
+	return b.temp[s].get(func() *form { return b.reading(s.DryBulb()) })
 }
 
 func (b *Books) humRatio(s trend.Station) *form {

@@ -202,7 +202,7 @@ var (
 // ---- what they need
 
 func needTemp(s trend.Station) Need {
-	return Need{What: "temperature of " + s.Title(), AnyOf: [][]trend.Role{{tempRole(s)}}}
+	return Need{What: "temperature of " + s.Title(), AnyOf: [][]trend.Role{{s.DryBulb()}}}
 }
 
 func needMoisture(s trend.Station) Need {

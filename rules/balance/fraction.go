@@ -93,7 +93,7 @@ func (b *Books) fractionTemp() (*form, []float64) {
 	}
 	ao, ar := b.heatCapacities(in), b.heatCapacities(trend.Return)
 	f, do, dr, dm, v := b.buffer(), b.buffer(), b.buffer(), b.buffer(), b.buffer()
-	qo, qr, qm := b.total(tempRole(in)), b.total(trend.RATemp), b.total(trend.MATemp)
+	qo, qr, qm := b.total(in.DryBulb()), b.total(trend.RATemp), b.total(trend.MATemp)
 	for i := range f {
 		x, y := ar[i]*(tr.val[i]-tm.val[i]), ao[i]*(tm.val[i]-to.val[i])
 		d := x + y
@@ -108,7 +108,7 @@ func (b *Books) fractionTemp() (*form, []float64) {
 		dr[i], do[i], dm[i] = r, o, -(r + o)
 		v[i] = r*r*qr.at(i) + o*o*qo.at(i) + (r+o)*(r+o)*qm.at(i)
 	}
-	return &form{val: f, sens: []sens{{role: tempRole(in), c: 1, d: do}, {role: trend.RATemp, c: 1, d: dr}, {role: trend.MATemp, c: 1, d: dm}}}, v
+	return &form{val: f, sens: []sens{{role: in.DryBulb(), c: 1, d: do}, {role: trend.RATemp, c: 1, d: dr}, {role: trend.MATemp, c: 1, d: dm}}}, v
 }
 
 // total is the variance of a reading in one interval, offset and noise.

@@ -122,31 +122,6 @@ func wet(c trend.Component) bool {
 	return false
 }
 
-// tempRole is the dry-bulb role of a station, NoRole where it has none.
-func tempRole(s trend.Station) trend.Role {
-	switch s {
-	case trend.Outdoor:
-		return trend.OATemp
-	case trend.Recovered:
-		return trend.RETemp
-	case trend.Return:
-		return trend.RATemp
-	case trend.Mixed:
-		return trend.MATemp
-	case trend.AfterPreheat:
-		return trend.PHTemp
-	case trend.AfterCooling:
-		return trend.CCTemp
-	case trend.AfterHeating:
-		return trend.HCTemp
-	case trend.Supply:
-		return trend.SATemp
-	case trend.Weather:
-		return trend.WXTemp
-	}
-	return trend.NoRole
-}
-
 // moistureWays lists, station by station, the ways to its moisture content, the
 // usual first: each a set of roles, the moisture reading in front.
 func moistureWays(s trend.Station) [][]trend.Role {

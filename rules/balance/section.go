@@ -63,7 +63,7 @@ func (b *Books) riseOver(s section) *form {
 	return r
 }
 
-func (b *Books) hasTemp(s trend.Station) bool { return b.u.Has(tempRole(s)) }
+func (b *Books) hasTemp(s trend.Station) bool { return b.u.Has(s.DryBulb()) }
 
 func (b *Books) hasMoisture(s trend.Station) bool { return moistureWay(b.u, s) != nil }
 

@@ -132,7 +132,7 @@ func (b *Books) relative(r trend.Role) (share, least float64) {
 }
 
 func (b *Books) stratified(out, tm []float64, u float64) {
-	to, tr := b.u.Col(tempRole(b.path.inlet)), b.u.Col(trend.RATemp)
+	to, tr := b.u.Col(b.path.inlet.DryBulb()), b.u.Col(trend.RATemp)
 	if to == nil || tr == nil || !b.path.mixing {
 		for i := range out {
 			out[i] = u

@@ -48,7 +48,7 @@ func (r *rig) flat(role trend.Role, x float64) *rig {
 
 // air sets a station's temperature and relative humidity from t and w.
 func (r *rig) air(s trend.Station, rh trend.Role, t, w func(i int) float64) *rig {
-	r.set(tempRole(s), t)
+	r.set(s.DryBulb(), t)
 	return r.set(rh, func(i int) float64 { return atSeaLevel.RelHumidity(t(i), w(i)) })
 }
 
