@@ -289,9 +289,6 @@ func (r *Rule) Missing(b *balance.Books) []trend.Role {
 		}
 		add(best...)
 	}
-	if r.Needs.State && b.FanKnownBy() == trend.NoRole && len(out) > 0 {
-		add(trend.SAFanStatus)
-	}
 	slices.Sort(out)
 	return out
 }

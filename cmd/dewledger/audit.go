@@ -121,7 +121,7 @@ func auditUnit(ctx context.Context, in *ingest.Result, i int, a *audited, out *o
 		page = filepath.Join("units", report.SafeName(u.Name)+".html")
 	}
 	err = out.write(page, func(w io.Writer) error {
-		return report.UnitPage(w, report.UnitReport{Set: &a.set, Books: b, Sources: reportSources(sources), Measure: measure, Version: version(), Assumed: assumed(in, u), Notes: in.Notes})
+		return report.UnitPage(w, report.UnitReport{Set: &a.set, Books: b, Sources: reportSources(sources), Measure: measure, Version: version(), Assumed: assumed(in, b), Notes: in.Notes})
 	})
 	if err != nil {
 		return err
@@ -180,7 +180,8 @@ func settingOf(in *ingest.Result, unit, rule, param string) (ingest.Setting, boo
 }
 
 // assumed says in sentences what nobody stated.
-func assumed(in *ingest.Result, u *trend.Unit) []string {
+func assumed(in *ingest.Result, b *balance.Books) []string {
+	u := b.Unit()
 	var out []string
 	say := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
 	if !in.ScheduleUsed {
@@ -198,6 +199,9 @@ func assumed(in *ingest.Result, u *trend.Unit) []string {
 			order = append(order, c.Title())
 		}
 		say("The order of components along the air was not given: %s was assumed.", join(order))
+	}
+	if b.FanKnownBy() == trend.NoRole {
+		say("No point tells whether the fan runs: it was taken to run all the time.")
 	}
 	if u.Plant.FanHeat != u.Plant.FanHeat {
 		say("The fan's heat was not given: 1.0 K with a standard uncertainty of 0.5 K was assumed.")
