@@ -124,7 +124,6 @@ func TestWideCSV(t *testing.T) {
 	if u.Axis.N != 24 || u.Axis.Step != 5*time.Minute {
 		t.Fatalf("axis %+v", u.Axis)
 	}
-	nan := math.NaN()
 	for role, want := range map[trend.Role][]float64{
 		trend.SATemp: {15, nan, nan, 16}, trend.RATemp: {22.5, 22.6, 22.7, nan}, trend.OARH: {0.5, 0.51, nan, 0.52},
 		trend.CoolValve: {0.1, 0, 1, 0.5}, trend.SAFanStatus: {1, 0, 1, 1}, trend.MATemp: {18, nan, nan, 18.5},
