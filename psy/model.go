@@ -6,6 +6,10 @@ import "math"
 const (
 	minT, maxT = -60.0, 90.0
 	minP, maxP = 50e3, 110e3
+
+	// maxW bounds what has an enthalpy as a real gas: the polynomial in W turns
+	// over far beyond it, and would give a false root near boiling.
+	maxW = 3.0
 )
 
 // eps is the ratio of the molar masses of water and dry air. Source: ASHRAE
@@ -208,9 +212,12 @@ const (
 // water at 0 degC as zero (at 101.325 kPa). For an ideal model
 // h = 1.006·t + W·(2501 + 1.86·t).
 //
+// NaN outside the range of states and, for a real gas, for w over 3.
+//
 // Source: ideal, ASHRAE Handbook of Fundamentals, psychrometrics chapter,
 // equation 30; real, a polynomial fitted to real-gas states (see the package's
-// tests), within 0.03 kJ/kg from -10 to 50 degC and 70 to 103 kPa.
+// tests), within 0.015 kJ/kg from -10 to 50 degC and 70 to 103 kPa as measured.
+// The states reach w = 0.19; well beyond, the error grows.
 func (m Model) Enthalpy(t, w float64) float64 {
 	h, _, _ := m.EnthalpyPartials(t, w)
 	return h
@@ -225,6 +232,9 @@ func (m Model) EnthalpyPartials(t, w float64) (h, dt, dw float64) {
 	if m.Ideal {
 		return 1.006*t + w*(2501+1.86*t), 1.006 + 1.86*w, 2501 + 1.86*t
 	}
+	if w > maxW {
+		return math.NaN(), math.NaN(), math.NaN()
+	}
 	q := m.P / 1e5
 	d := q - 1.01325
 	h = ha1*t + ha2*t*t + w*(hb0+hb1*t+hb2*t*t+hb3*w+hb4*q) + (hc0+hc1*t)*d
@@ -234,11 +244,13 @@ func (m Model) EnthalpyPartials(t, w float64) (h, dt, dw float64) {
 }
 
 // Temp is the dry bulb at enthalpy h and humidity ratio w: the inverse of
-// Enthalpy. NaN outside the range of states.
+// Enthalpy. NaN outside the range of states, and where Enthalpy is.
 func (m Model) Temp(h, w float64) float64 {
 	var t float64
 	if m.Ideal {
 		t = (h - 2501*w) / (1.006 + 1.86*w)
+	} else if w > maxW {
+		return math.NaN()
 	} else {
 		q := m.P / 1e5
 		d := q - 1.01325
@@ -254,7 +266,9 @@ func (m Model) Temp(h, w float64) float64 {
 	return t
 }
 
-// HumRatioEnthalpy is the humidity ratio at dry bulb t and enthalpy h.
+// HumRatioEnthalpy is the humidity ratio at dry bulb t and enthalpy h, the inverse
+// of Enthalpy: negative where h is less than dry air's. NaN outside the range of
+// states.
 func (m Model) HumRatioEnthalpy(t, h float64) float64 {
 	w, _, _ := m.HumRatioEnthalpyPartials(t, h)
 	return w
@@ -271,7 +285,10 @@ func (m Model) HumRatioEnthalpyPartials(t, h float64) (w, dt, dh float64) {
 		x, _, dw := m.EnthalpyPartials(t, w)
 		w -= (x - h) / dw
 	}
-	_, ht, hw := m.EnthalpyPartials(t, w)
+	x, ht, hw := m.EnthalpyPartials(t, w)
+	if !(math.Abs(x-h) <= 1e-9*(1+math.Abs(h))) {
+		return math.NaN(), math.NaN(), math.NaN() // no such air
+	}
 	return w, -ht / hw, 1 / hw
 }
 

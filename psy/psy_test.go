@@ -219,34 +219,6 @@ func TestPartials(t *testing.T) {
 	})
 }
 
-func TestSlicesEqualScalars(t *testing.T) {
-	states(3000, 3, func(m Model, tt, rh float64) {
-		one := func(x float64) []float64 { return []float64{x} }
-		w := m.HumRatio(tt, rh)
-		got, h, a, b := one(0), one(0), one(0), one(0)
-		same := func(what string, got, want float64) {
-			tol := 1e-7 * math.Abs(want)
-			if what == "dew point" { // near 0 degC it has no relative error to speak of
-				tol = math.Max(tol, 1e-7)
-			}
-			if !(math.Abs(got-want) <= tol) {
-				t.Errorf("%+v t=%v rh=%v: %s %v, scalar %v", m, tt, rh, what, got, want)
-			}
-		}
-		m.HumRatios(got, one(tt), one(rh))
-		same("W", got[0], w)
-		m.HumRatiosEnthalpies(got, h, one(tt), one(rh))
-		same("fused W", got[0], w)
-		m.HumRatiosPartials(got, a, b, one(tt), one(rh))
-		_, dt, drh, _ := m.HumRatioPartials(tt, rh)
-		if math.Abs(a[0]-dt) > 1e-5*math.Abs(dt) || math.Abs(b[0]-drh) > 1e-6*math.Abs(drh) {
-			t.Errorf("partials %v %v, scalar %v %v", a[0], b[0], dt, drh)
-		}
-		m.DewPoints(got, one(w))
-		same("dew point", got[0], m.DewPoint(w))
-	})
-}
-
 // No argument may panic, hang or come back clamped: a result outside its range
 // is NaN.
 func FuzzEverything(f *testing.F) {
@@ -277,46 +249,4 @@ func FuzzEverything(f *testing.F) {
 		SatPressure(tt)
 		PressureAtAltitude(tt)
 	})
-}
-
-func BenchmarkSlices(b *testing.B) {
-	const n = 4096
-	t, rh, w, h, out := make([]float64, n), make([]float64, n), make([]float64, n), make([]float64, n), make([]float64, n)
-	m := Model{P: 101325}
-	for i := range t {
-		t[i], rh[i] = 5+25*float64(i)/n, 0.3+0.4*float64(i%97)/97
-		w[i] = m.HumRatio(t[i], rh[i])
-	}
-	for _, c := range []struct {
-		name string
-		run  func()
-	}{
-		{"W and h/scalar", func() {
-			for i := range t {
-				out[i] = m.HumRatio(t[i], rh[i])
-				h[i] = m.Enthalpy(t[i], out[i])
-			}
-		}},
-		{"W and h/slices", func() { m.HumRatiosEnthalpies(out, h, t, rh) }},
-		{"dew point/scalar", func() {
-			for i := range w {
-				out[i] = m.DewPoint(w[i])
-			}
-		}},
-		{"dew point/slices", func() { m.DewPoints(out, w) }},
-		{"wet bulb/scalar", func() {
-			for i := range w {
-				out[i] = m.WetBulb(t[i], w[i])
-			}
-		}},
-		{"wet bulb/slices", func() { m.WetBulbs(out, t, w) }},
-	} {
-		b.Run(c.name, func(b *testing.B) {
-			b.ReportAllocs()
-			for b.Loop() {
-				c.run()
-			}
-			b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N)/n, "ns/value")
-		})
-	}
 }

@@ -54,6 +54,11 @@ func lnSatIce(t float64) (l, dt float64) {
 	if !(t >= minSat && t <= triplePoint) {
 		return math.NaN(), math.NaN()
 	}
+	return lnIce(t)
+}
+
+// lnIce is lnSatIce without the ends of its range.
+func lnIce(t float64) (l, dt float64) {
 	const c1, c2, c3, c4, c5, c6, c7 = -5.6745359e3, 6.3925247, -9.6778430e-3, 6.2215701e-7, 2.0747825e-9, -9.4840240e-13, 4.1635019
 	x := t + kelvin
 	l = c1/x + c2 + x*(c3+x*(c4+x*(c5+x*c6))) + c7*math.Log(x)

@@ -3,180 +3,9 @@ package psy
 import "math"
 
 // The slice forms do a whole column at once, without allocation, and equal the
-// scalar forms within 1e-7 relative. A destination may be one of its sources.
-// Different lengths panic: a caller's mistake.
-
-// pieces is a function on a regular grid, a cubic a piece that meets the function
-// and its slope at both ends (Hermite). For the saturation pressure on a
-// half-kelvin grid the relative error is (d ln p/dT)⁴·h⁴/384: 4e-9 at room
-// temperature, 5e-8 at -60 degC. Water and ice have a grid each, so that no piece
-// straddles the triple point.
-type pieces struct {
-	from, scale float64 // scale is pieces a unit
-	c           [][4]float64
-}
-
-func newPieces(from, to float64, n int, f func(float64) (v, slope float64)) *pieces {
-	p := &pieces{from: from, scale: float64(n) / (to - from), c: make([][4]float64, n)}
-	h := (to - from) / float64(n)
-	at := func(i int) (float64, float64) {
-		v, d := f(math.Min(from+h*float64(i), to)) // rounding must not leave f's range
-		return v, d * h
-	}
-	a, da := at(0)
-	for i := range p.c {
-		b, db := at(i + 1)
-		p.c[i] = [4]float64{a, da, 3*(b-a) - 2*da - db, da + db - 2*(b-a)}
-		a, da = b, db
-	}
-	return p
-}
-
-// at is the function at x, which lies on the grid.
-func (p *pieces) at(x float64) float64 {
-	x = (x - p.from) * p.scale
-	i := min(int(x), len(p.c)-1)
-	x -= float64(i)
-	c := &p.c[i]
-	return c[0] + x*(c[1]+x*(c[2]+x*c[3]))
-}
-
-// both is the function at x and its slope.
-func (p *pieces) both(x float64) (v, slope float64) {
-	x = (x - p.from) * p.scale
-	i := min(int(x), len(p.c)-1)
-	x -= float64(i)
-	c := &p.c[i]
-	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * p.scale
-}
-
-func pressureOf(ln func(float64) (float64, float64)) func(float64) (float64, float64) {
-	return func(t float64) (v, slope float64) {
-		l, d := ln(t)
-		v = math.Exp(l)
-		return v, v * d
-	}
-}
-
-var (
-	waterPressure = newPieces(minT-1, maxT+1, 2*152, pressureOf(lnSatWater))
-	icePressure   = newPieces(minT-1, triplePoint, 2*62, pressureOf(lnSatIce))
-)
-
-// fastVapour is f·pws at t and its slope; t lies in the range of states.
-func (m Model) fastVapour(t float64, water bool) (e, dt float64) {
-	k := waterPressure
-	if t < triplePoint && !water {
-		k = icePressure
-	}
-	p, dp := k.both(t)
-	f := m.Enhancement(t)
-	return f * p, m.enhancementSlope(t)*p + f*dp
-}
-
-// octaves is the saturation temperature as a function of pressure, in pieces that
-// are even in the pressure's mantissa: the exponent and the first mantissa bits
-// of a float64 are its index.
-type octaves struct {
-	least uint64 // index of the first piece
-	c     [][4]float64
-}
-
-const mantissaBits = 6 // 64 pieces an octave
-
-func newOctaves(lo, hi float64, f func(p float64) (t, slope float64)) *octaves {
-	index := func(p float64) uint64 { return math.Float64bits(p) >> (52 - mantissaBits) }
-	o := &octaves{least: index(lo)}
-	for k := o.least; k <= index(hi); k++ {
-		a := math.Float64frombits(k << (52 - mantissaBits))
-		b := math.Float64frombits((k + 1) << (52 - mantissaBits))
-		va, da := f(a)
-		vb, db := f(b)
-		h := b - a
-		da, db = da*h, db*h
-		o.c = append(o.c, [4]float64{va, da, 3*(vb-va) - 2*da - db, da + db - 2*(vb-va)})
-	}
-	return o
-}
-
-// at is the temperature at p; false outside the pieces.
-func (o *octaves) at(p float64) (float64, bool) {
-	bits := math.Float64bits(p)
-	i := bits>>(52-mantissaBits) - o.least // wraps far up for what is too small
-	if i >= uint64(len(o.c)) {
-		return 0, false
-	}
-	// The mantissa bits below the index, as a fraction of the piece.
-	x := float64(bits&(1<<(52-mantissaBits)-1)) * (1.0 / (1 << (52 - mantissaBits)))
-	c := &o.c[i]
-	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), true
-}
-
-// saturationAt inverts the logarithm of a saturation pressure.
-func saturationAt(ln func(float64) (float64, float64), lo, hi float64) func(p float64) (t, slope float64) {
-	return func(p float64) (float64, float64) {
-		target, a, b := math.Log(p), lo, hi
-		t := 0.5 * (a + b)
-		var d float64
-		for range 80 {
-			var l float64
-			l, d = ln(t)
-			if l > target {
-				b = t
-			} else {
-				a = t
-			}
-			next := t - (l-target)/d
-			if !(next >= a && next <= b) {
-				next = 0.5 * (a + b)
-			}
-			if math.Abs(next-t) < 1e-12 {
-				break
-			}
-			t = next
-		}
-		return t, 1 / (d * p)
-	}
-}
-
-var (
-	triplePressure = SatPressureWater(triplePoint)
-	waterPoint     = newOctaves(triplePressure/2, SatPressureWater(maxT), saturationAt(lnSatWater, -30, maxT+30))
-	icePoint       = newOctaves(SatPressureIce(minSat+1), triplePressure, saturationAt(lnIceBeyond, minSat-5, triplePoint+5))
-)
-
-// lnIceBeyond is lnSatIce carried some kelvin beyond its ends, so that the last
-// pieces have both of theirs.
-func lnIceBeyond(t float64) (l, dt float64) {
-	x := math.Min(math.Max(t, minSat), triplePoint)
-	l, dt = lnSatIce(x)
-	return l + dt*(t-x), dt
-}
-
-// fastDewPoint is dewPoint from the pieces: the enhancement is found in three
-// rounds, each of which brings it a thousand times closer.
-func (m Model) fastDewPoint(w float64) float64 {
-	e := m.P * w / (eps + w)
-	t := 10.0
-	for range 4 {
-		p := e / m.Enhancement(t)
-		k := waterPoint
-		if p < triplePressure {
-			k = icePoint
-		}
-		var ok bool
-		if t, ok = k.at(p); !ok {
-			return m.dewPoint(w)
-		}
-		if m.Ideal {
-			break
-		}
-	}
-	if math.Abs(t-triplePoint) < 0.05 || t < minSat+2 || t > maxT-1 {
-		return m.dewPoint(w) // near the kink and the ends
-	}
-	return t
-}
+// scalar forms within 1e-7 relative, temperatures within 1e-7 K where that is
+// more. A destination may be one of its sources. Different lengths panic: a
+// caller's mistake.
 
 func sameLength(n int, lens ...int) {
 	for _, k := range lens {
@@ -186,27 +15,68 @@ func sameLength(n int, lens ...int) {
 	}
 }
 
-// HumRatios is HumRatio over columns.
-func (m Model) HumRatios(dst, t, rh []float64) {
-	sameLength(len(dst), len(t), len(rh))
-	for i, x := range t {
-		dst[i] = m.fastHumRatio(x, rh[i])
-	}
+// column is a Model with everything worked out that does not change along a
+// column. Its polynomials are those of Enhancement, Enthalpy and the wet bulb.
+type column struct {
+	ranged         bool // the pressure lies in the range of states
+	p              float64
+	f0, f2         float64 // f = f0 + f2·t²
+	c, a1, a2      float64 // h = c + a1·t + a2·t² + w·(b0 + b1·t + b2·t² + b3·w)
+	b0, b1, b2, b3 float64
+	maxW           float64
+	ice            *pieces // pressure below the triple point that rh refers to
 }
 
-func (m Model) fastHumRatio(t, rh float64) float64 {
-	if !m.valid(t) {
-		return math.NaN()
+func (m Model) column() column {
+	k := column{ranged: m.P >= minP && m.P <= maxP, p: m.P, maxW: maxW, ice: waterPressure}
+	if m.Ice {
+		k.ice = icePressure
 	}
-	k := waterPressure
-	if t < triplePoint && m.Ice {
-		k = icePressure
+	if m.Ideal {
+		k.f0, k.a1, k.b0, k.b1, k.maxW = 1, 1.006, 2501, 1.86, math.MaxFloat64
+		return k
 	}
-	e := rh * m.Enhancement(t) * k.at(t)
-	if d := m.P - e; d > 0 {
+	q := m.P / 1e5
+	d := q - 1.01325
+	k.f0, k.f2 = m.Enhancement(0), 5.6e-7
+	k.c, k.a1, k.a2 = hc0*d, ha1+hc1*d, ha2
+	k.b0, k.b1, k.b2, k.b3 = hb0+hb4*q, hb1, hb2, hb3
+	return k
+}
+
+func (k *column) valid(t float64) bool { return k.ranged && t >= minT && t <= maxT }
+
+// humRatio is HumRatio at a t in range.
+func (k *column) humRatio(t, rh float64) float64 {
+	table := waterPressure
+	if t < triplePoint {
+		table = k.ice
+	}
+	e := rh * (k.f0 + k.f2*t*t) * table.at(t)
+	if d := k.p - e; d > 0 {
 		return eps * e / d
 	}
 	return math.NaN()
+}
+
+func (k *column) enthalpy(t, w float64) float64 {
+	if !(w <= k.maxW) {
+		return math.NaN()
+	}
+	return k.c + t*(k.a1+k.a2*t) + w*(k.b0+t*(k.b1+k.b2*t)+k.b3*w)
+}
+
+// HumRatios is HumRatio over columns.
+func (m Model) HumRatios(dst, t, rh []float64) {
+	sameLength(len(dst), len(t), len(rh))
+	k := m.column()
+	for i, x := range t {
+		y := math.NaN()
+		if k.valid(x) {
+			y = k.humRatio(x, rh[i])
+		}
+		dst[i] = y
+	}
 }
 
 // HumRatiosPartials is HumRatioPartials over columns, without the pressure's.
@@ -225,47 +95,41 @@ func (m Model) HumRatiosPartials(w, dt, drh, t, rh []float64) {
 // HumRatiosEnthalpies is HumRatio and Enthalpy over columns in one pass.
 func (m Model) HumRatiosEnthalpies(w, h, t, rh []float64) {
 	sameLength(len(w), len(h), len(t), len(rh))
+	k := m.column()
 	for i, x := range t {
-		y := m.fastHumRatio(x, rh[i])
-		w[i] = y
-		h[i] = m.Enthalpy(x, y)
+		y := math.NaN()
+		if k.valid(x) {
+			y = k.humRatio(x, rh[i])
+		}
+		w[i], h[i] = y, k.enthalpy(x, y)
 	}
 }
 
 // HumRatiosDewPoint is HumRatioDewPoint over a column.
 func (m Model) HumRatiosDewPoint(dst, td []float64) {
 	sameLength(len(dst), len(td))
+	m.Ice = true // a frost point is over ice
+	k := m.column()
 	for i, x := range td {
-		dst[i] = m.HumRatioDewPoint(x)
+		if k.valid(x) {
+			dst[i] = k.humRatio(x, 1)
+		} else {
+			dst[i] = m.HumRatioDewPoint(x) // frost points reach further down
+		}
 	}
 }
 
 // Enthalpies is Enthalpy over columns.
 func (m Model) Enthalpies(dst, t, w []float64) {
 	sameLength(len(dst), len(t), len(w))
+	k := m.column()
 	for i, x := range t {
-		dst[i] = m.Enthalpy(x, w[i])
-	}
-}
-
-// DewPoints is DewPoint over a column.
-func (m Model) DewPoints(dst, w []float64) {
-	sameLength(len(dst), len(w))
-	ranged := m.P >= minP && m.P <= maxP
-	for i, x := range w {
-		if !ranged || !(x > 0) || math.IsInf(x, 0) {
+		y := w[i]
+		if k.valid(x) && !math.IsInf(y, 0) {
+			dst[i] = k.enthalpy(x, y)
+		} else {
 			dst[i] = math.NaN()
-			continue
 		}
-		dst[i] = m.fastDewPoint(x)
-	}
-}
-
-// WetBulbs is WetBulb over columns.
-func (m Model) WetBulbs(dst, t, w []float64) {
-	sameLength(len(dst), len(t), len(w))
-	for i, x := range t {
-		dst[i] = m.WetBulb(x, w[i])
 	}
 }
 
@@ -275,4 +139,141 @@ func (m Model) Volumes(dst, t, w []float64) {
 	for i, x := range t {
 		dst[i] = m.Volume(x, w[i])
 	}
+}
+
+// DewPoints is DewPoint over a column.
+func (m Model) DewPoints(dst, w []float64) {
+	sameLength(len(dst), len(w))
+	k := m.column()
+	for i, x := range w {
+		td := math.NaN()
+		if k.ranged && x > 0 {
+			td = k.dewPoint(x)
+			if !(td > minSat+2 && td < maxT-1) {
+				td = m.DewPoint(x) // near the ends
+			}
+		}
+		dst[i] = td
+	}
+}
+
+// dewPoint is the dew point from the pieces, NaN beyond them. The vapour pressure
+// alone gives the temperature to 0.2 K; one step along the slope brings that to
+// 2e-4 K, at which the enhancement is right to 2e-8.
+func (k *column) dewPoint(w float64) float64 {
+	e := k.p * w / (eps + w)
+	t, slope, ok := saturationPieces(e).both(e)
+	if !ok {
+		return math.NaN()
+	}
+	d := k.f0 + k.f2*t*t - 1
+	t -= slope * d * (1 - d)
+	d = k.f0 + k.f2*t*t - 1
+	e -= e * d * (1 - d*(1-d*(1-d))) // e/f, to 1e-10
+	t, ok = saturationPieces(e).at(e)
+	if !ok {
+		return math.NaN()
+	}
+	return t
+}
+
+func saturationPieces(e float64) *octaves {
+	if e < triplePressure {
+		return icePoint
+	}
+	return waterPoint
+}
+
+// WetBulbs is WetBulb over columns.
+func (m Model) WetBulbs(dst, t, w []float64) {
+	sameLength(len(dst), len(t), len(w))
+	k := m.column()
+	water := phase{table: waterPressure, h1: 4.186}
+	ice := phase{table: icePressure, h0: -333.4, h1: 2.1}
+	if m.Ideal {
+		ice.h0 = -329 // 2501 less the handbook's 2830
+	}
+	// Where the wet bulb over liquid is the triple point.
+	ws := m.satHumRatio(triplePoint, true)
+	hs, hw := k.enthalpy(triplePoint, ws), water.h1*triplePoint
+	for i, x := range t {
+		y := w[i]
+		if !k.valid(x) || !(y >= 0 && y < 10) {
+			dst[i] = m.WetBulb(x, y)
+			continue
+		}
+		ph := &water
+		if x < triplePoint || k.enthalpy(x, y)-y*hw < hs-ws*hw {
+			ph = &ice
+		}
+		tw := k.wetBulb(x, y, ph)
+		if math.IsNaN(tw) {
+			tw = m.WetBulb(x, y)
+		}
+		dst[i] = tw
+	}
+}
+
+// phase is the water that a wet bulb evaporates: its saturation pressure and its
+// enthalpy h0 + h1·t.
+type phase struct {
+	table  *pieces
+	h0, h1 float64
+}
+
+// wetBulb solves h(t*, Ws) + (W − Ws)·hw(t*) = h(t, W), in which nothing is
+// nested, by Halley's method: two or three rounds. NaN where it is not sure of
+// the result: near saturation, the ends of the range and the triple point.
+func (k *column) wetBulb(t, w float64, ph *phase) float64 {
+	// The first guess: the psychrometric equation with a saturation pressure that
+	// falls from dry bulb to wet bulb as 1/(1 + a·x), a quadratic in x. The bend
+	// makes up for that falling more slowly than a saturation pressure does.
+	const bend = 1.3
+	table := waterPressure
+	if t < triplePoint {
+		table = icePressure
+	}
+	es, des, _ := table.curve(t)
+	e := k.p * w / (eps + w)
+	gamma := 1.006 / (eps * 2501) * k.p
+	a := bend * des / es
+	b := gamma + e*a
+	gap := es - e
+	if !(gap > 1e-5*es) {
+		return math.NaN()
+	}
+	tw := t - 2*gap/(b+math.Sqrt(b*b+4*gamma*a*gap))
+
+	h := k.enthalpy(t, w)
+	hi := maxT
+	if ph.table == icePressure {
+		hi = triplePoint
+	}
+	for range 6 {
+		tw = min(max(tw, minT), hi)
+		p, dp, d2p := ph.table.curve(tw)
+		f := k.f0 + k.f2*tw*tw
+		e := f * p
+		inv := 1 / (k.p - e)
+		ws := eps * e * inv
+		if !(ws > 0 && ws <= k.maxW) {
+			return math.NaN()
+		}
+		de := (2*k.f2*tw*p + f*dp) * inv
+		dws := (eps + ws) * de
+		d2ws := (eps+ws)*f*d2p*inv + 2*dws*de
+		hv := k.b0 + tw*(k.b1+k.b2*tw) + k.b3*ws - ph.h0 - ph.h1*tw
+		r := k.c + tw*(k.a1+k.a2*tw) + ws*hv + w*(ph.h0+ph.h1*tw) - h
+		dr := k.a1 + 2*k.a2*tw + ws*(k.b1+2*k.b2*tw) + dws*(hv+k.b3*ws) + (w-ws)*ph.h1
+		d2r := d2ws*hv + 2*dws*(k.b1-ph.h1)
+		step := 2 * r * dr / (2*dr*dr - r*d2r)
+		tw -= step
+		if math.Abs(step) < 0.01 { // the next would be under 1e-8
+			if tw > minT+0.01 && tw < t && math.Abs(tw-triplePoint) > 1e-3 {
+				return tw
+			}
+			break
+		}
+	}
+	return math.NaN()
 }
