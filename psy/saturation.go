@@ -94,25 +94,3 @@ func AltitudeAtPressure(p float64) float64 {
 	}
 	return z
 }
-
-// WaterEnthalpy is the enthalpy of water at t, kJ/kg, liquid from the triple
-// point on and ice below, with liquid water at 0 degC as zero. Source: ASHRAE
-// Handbook of Fundamentals, psychrometrics chapter: 4.186·t, and -333.4 + 2.1·t
-// for ice.
-func WaterEnthalpy(t float64) float64 {
-	if t < triplePoint {
-		return -333.4 + 2.1*t
-	}
-	return 4.186 * t
-}
-
-// SteamEnthalpy is the enthalpy of saturated steam at t, kJ/kg, NaN outside 0 to
-// 200 degC. Source: ASHRAE Handbook of Fundamentals, thermodynamic properties of
-// water at saturation; a quadratic through 2500.9 (0 degC), 2675.6 (100 degC) and
-// 2792.0 (200 degC), within 4 kJ/kg between.
-func SteamEnthalpy(t float64) float64 {
-	if !(t >= 0 && t <= 200) {
-		return math.NaN()
-	}
-	return 2500.9 + 2.0385*t - 2.915e-3*t*t
-}
