@@ -48,13 +48,22 @@ func (m Model) enhancementSlope(t float64) float64 {
 	return 2 * 5.6e-7 * t
 }
 
-// vapour is f·pws at t and its derivative with temperature, over liquid water
-// alone where water is set.
-func (m Model) vapour(t float64, water bool) (e, dt float64) {
-	l, dl := lnSat(t, water)
-	p := math.Exp(l)
-	f := m.Enhancement(t)
-	return f * p, p * (m.enhancementSlope(t) + f*dl)
+// vapour is f·pws at t, over liquid water alone where water is set.
+func (m Model) vapour(t float64, water bool) float64 {
+	return m.Enhancement(t) * satPressure(t, water)
+}
+
+// vapourSlope is vapour's derivative with temperature, given vapour.
+func (m Model) vapourSlope(t, s float64, water bool) float64 {
+	return s * (satSlope(t, water) + m.enhancementSlope(t)/m.Enhancement(t))
+}
+
+// ratio is the humidity ratio at a vapour pressure.
+func (m Model) ratio(e float64) float64 {
+	if d := m.P - e; d > 0 {
+		return eps * e / d
+	}
+	return math.NaN()
 }
 
 // HumRatio is the humidity ratio at dry bulb t and relative humidity rh:
@@ -65,8 +74,10 @@ func (m Model) vapour(t float64, water bool) (e, dt float64) {
 // Source: ASHRAE Handbook of Fundamentals, psychrometrics chapter, equations 20
 // and 22, with Enhancement.
 func (m Model) HumRatio(t, rh float64) float64 {
-	w, _, _, _ := m.HumRatioPartials(t, rh)
-	return w
+	if !m.valid(t) || math.IsInf(rh, 0) {
+		return math.NaN()
+	}
+	return m.ratio(rh * m.vapour(t, !m.Ice))
 }
 
 // HumRatioPartials is HumRatio with its partial derivatives with respect to t
@@ -75,8 +86,8 @@ func (m Model) HumRatioPartials(t, rh float64) (w, dt, drh, dp float64) {
 	if !m.valid(t) || math.IsInf(rh, 0) {
 		return nan4()
 	}
-	s, ds := m.vapour(t, !m.Ice)
-	return m.fromVapour(rh*s, rh*ds, s, rh*m.vapourSlopeP(t, s))
+	s := m.vapour(t, !m.Ice)
+	return m.fromVapour(rh*s, rh*m.vapourSlope(t, s, !m.Ice), s, rh*m.vapourSlopeP(t, s))
 }
 
 // vapourSlopeP is the derivative of f·pws with pressure.
@@ -108,18 +119,24 @@ func (m Model) SatHumRatio(t float64) float64 { return m.HumRatioDewPoint(t) }
 // HumRatioDewPoint is the humidity ratio of air with dew point (frost point
 // below 0.01 degC) td.
 func (m Model) HumRatioDewPoint(td float64) float64 {
-	w, _, _ := m.HumRatioDewPointPartials(td)
-	return w
+	if !m.dewPointValid(td) {
+		return math.NaN()
+	}
+	return m.ratio(m.vapour(td, false))
+}
+
+func (m Model) dewPointValid(td float64) bool {
+	return td >= minSat && td <= maxT && m.P >= minP && m.P <= maxP
 }
 
 // HumRatioDewPointPartials is HumRatioDewPoint with its partial derivatives with
 // respect to td (1/K) and p (1/Pa).
 func (m Model) HumRatioDewPointPartials(td float64) (w, dtd, dp float64) {
-	if !(td >= minSat && td <= maxT && m.P >= minP && m.P <= maxP) {
+	if !m.dewPointValid(td) {
 		return math.NaN(), math.NaN(), math.NaN()
 	}
-	s, ds := m.vapour(td, false)
-	w, dtd, _, dp = m.fromVapour(s, ds, 0, m.vapourSlopeP(td, s))
+	s := m.vapour(td, false)
+	w, dtd, _, dp = m.fromVapour(s, m.vapourSlope(td, s, false), 0, m.vapourSlopeP(td, s))
 	return w, dtd, dp
 }
 
@@ -129,8 +146,7 @@ func (m Model) RelHumidity(t, w float64) float64 {
 	if !m.valid(t) || !(w > -eps) || math.IsInf(w, 0) {
 		return math.NaN()
 	}
-	s, _ := m.vapour(t, !m.Ice)
-	return m.P * w / (eps + w) / s
+	return m.P * w / (eps + w) / m.vapour(t, !m.Ice)
 }
 
 // Saturation is the degree of saturation W/Ws at t.
@@ -139,45 +155,29 @@ func (m Model) Saturation(t, w float64) float64 { return w / m.SatHumRatio(t) }
 // DewPoint is the dew point (frost point below 0.01 degC) of air with humidity
 // ratio w. NaN for w that is not positive, or beyond -100 to 90 degC.
 func (m Model) DewPoint(w float64) float64 {
-	td, _, _ := m.DewPointPartials(w)
-	return td
-}
-
-// DewPointPartials is DewPoint with its partial derivatives with respect to w
-// (K) and p (K/Pa).
-func (m Model) DewPointPartials(w float64) (td, dw, dp float64) {
-	td = m.dewPoint(w)
-	_, dtd, wp := m.HumRatioDewPointPartials(td)
-	return td, 1 / dtd, -wp / dtd
-}
-
-func (m Model) dewPoint(w float64) float64 {
 	if !(w > 0) || math.IsInf(w, 0) || !(m.P >= minP && m.P <= maxP) {
 		return math.NaN()
 	}
 	target := math.Log(m.P * w / (eps + w))
 	// Newton in the logarithm, which is nearly linear in 1/T; the branch is known
 	// beforehand, and each is smooth.
-	at := func(t float64, water bool) (g, dg float64) {
-		l, dl := lnSat(t, water)
-		f := m.Enhancement(t)
-		return l + math.Log(f) - target, dl + m.enhancementSlope(t)/f
-	}
-	g0, _ := at(triplePoint, true)
-	water := g0 <= 0
+	ln, slope := lnWater, lnWaterSlope
 	lo, hi := triplePoint, maxT
-	if !water {
+	above := lnWater(triplePoint) + math.Log(m.Enhancement(triplePoint)) - target
+	if above > 0 {
+		ln, slope = lnIce, lnIceSlope
 		lo, hi = minSat, triplePoint
 	}
-	t := math.Min(math.Max(triplePoint-g0*14, lo), hi)
+	t := math.Min(math.Max(triplePoint-above*14, lo), hi)
 	for range 60 {
-		g, dg := at(t, water)
+		f := m.Enhancement(t)
+		g := ln(t) + math.Log(f) - target
 		if g > 0 {
 			hi = t
 		} else {
 			lo = t
 		}
-		next := t - g/dg
+		next := t - g/(slope(t)+m.enhancementSlope(t)/f)
 		if !(next >= lo && next <= hi) {
 			next = 0.5 * (lo + hi)
 		}
@@ -187,10 +187,18 @@ func (m Model) dewPoint(w float64) float64 {
 		}
 		t = next
 	}
-	if g, _ := at(t, water); !(math.Abs(g) < 1e-9) {
+	if g := ln(t) + math.Log(m.Enhancement(t)) - target; !(math.Abs(g) < 1e-9) {
 		return math.NaN() // beyond the ends of the range
 	}
 	return t
+}
+
+// DewPointPartials is DewPoint with its partial derivatives with respect to w
+// (K) and p (K/Pa).
+func (m Model) DewPointPartials(w float64) (td, dw, dp float64) {
+	td = m.DewPoint(w)
+	_, dtd, wp := m.HumRatioDewPointPartials(td)
+	return td, 1 / dtd, -wp / dtd
 }
 
 // The enthalpy of moist air,
@@ -219,8 +227,34 @@ const (
 // tests), within 0.015 kJ/kg from -10 to 50 degC and 70 to 103 kPa as measured.
 // The states reach w = 0.19; well beyond, the error grows.
 func (m Model) Enthalpy(t, w float64) float64 {
-	h, _, _ := m.EnthalpyPartials(t, w)
-	return h
+	if !m.valid(t) || math.IsInf(w, 0) {
+		return math.NaN()
+	}
+	if m.Ideal {
+		return 1.006*t + w*(2501+1.86*t)
+	}
+	if w > maxW {
+		return math.NaN()
+	}
+	a, b := m.enthalpyInW(t)
+	return a + w*(b+hb3*w)
+}
+
+// enthalpyInW is the real gas's enthalpy at t as a polynomial in W,
+// a + b·W + hb3·W².
+func (m Model) enthalpyInW(t float64) (a, b float64) {
+	q := m.P / 1e5
+	return t*(ha1+ha2*t) + (hc0+hc1*t)*(q-1.01325), hb0 + t*(hb1+t*hb2) + hb4*q
+}
+
+// wOfEnthalpy solves a + b·w + c·w² = h for the root that tends to (h − a)/b as c
+// goes to 0. NaN where there is none, or it lies beyond maxW.
+func wOfEnthalpy(h, a, b, c float64) float64 {
+	w := 2 * (h - a) / (b + math.Sqrt(b*b+4*c*(h-a)))
+	if !(w <= maxW) {
+		return math.NaN()
+	}
+	return w
 }
 
 // EnthalpyPartials is Enthalpy with its partial derivatives with respect to t
@@ -235,12 +269,9 @@ func (m Model) EnthalpyPartials(t, w float64) (h, dt, dw float64) {
 	if w > maxW {
 		return math.NaN(), math.NaN(), math.NaN()
 	}
-	q := m.P / 1e5
-	d := q - 1.01325
-	h = ha1*t + ha2*t*t + w*(hb0+hb1*t+hb2*t*t+hb3*w+hb4*q) + (hc0+hc1*t)*d
-	dt = ha1 + 2*ha2*t + w*(hb1+2*hb2*t) + hc1*d
-	dw = hb0 + hb1*t + hb2*t*t + 2*hb3*w + hb4*q
-	return h, dt, dw
+	a, b := m.enthalpyInW(t)
+	dt = ha1 + 2*ha2*t + w*(hb1+2*hb2*t) + hc1*(m.P/1e5-1.01325)
+	return a + w*(b+hb3*w), dt, b + 2*hb3*w
 }
 
 // Temp is the dry bulb at enthalpy h and humidity ratio w: the inverse of
@@ -268,27 +299,23 @@ func (m Model) Temp(h, w float64) float64 {
 
 // HumRatioEnthalpy is the humidity ratio at dry bulb t and enthalpy h, the inverse
 // of Enthalpy: negative where h is less than dry air's. NaN outside the range of
-// states.
+// states, and where no air has that enthalpy.
 func (m Model) HumRatioEnthalpy(t, h float64) float64 {
-	w, _, _ := m.HumRatioEnthalpyPartials(t, h)
-	return w
+	if !m.valid(t) || math.IsInf(h, 0) {
+		return math.NaN()
+	}
+	if m.Ideal {
+		return (h - 1.006*t) / (2501 + 1.86*t)
+	}
+	a, b := m.enthalpyInW(t)
+	return wOfEnthalpy(h, a, b, hb3)
 }
 
 // HumRatioEnthalpyPartials is HumRatioEnthalpy with its partial derivatives with
 // respect to t (1/K) and h (kg/kJ).
 func (m Model) HumRatioEnthalpyPartials(t, h float64) (w, dt, dh float64) {
-	if !m.valid(t) || math.IsInf(h, 0) {
-		return math.NaN(), math.NaN(), math.NaN()
-	}
-	w = (h - 1.006*t) / (2501 + 1.86*t)
-	for range 8 { // Newton; h is nearly linear in w
-		x, _, dw := m.EnthalpyPartials(t, w)
-		w -= (x - h) / dw
-	}
-	x, ht, hw := m.EnthalpyPartials(t, w)
-	if !(math.Abs(x-h) <= 1e-9*(1+math.Abs(h))) {
-		return math.NaN(), math.NaN(), math.NaN() // no such air
-	}
+	w = m.HumRatioEnthalpy(t, h)
+	_, ht, hw := m.EnthalpyPartials(t, w)
 	return w, -ht / hw, 1 / hw
 }
 

@@ -55,17 +55,16 @@ func (p *pieces) curve(x float64) (v, slope, curve float64) {
 	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * p.scale, (2*c[2] + x*6*c[3]) * p.scale * p.scale
 }
 
-func pressureOf(ln func(float64) (float64, float64)) func(float64) (float64, float64) {
-	return func(t float64) (v, slope float64) {
-		l, d := ln(t)
-		v = math.Exp(l)
-		return v, v * d
+func pressureOf(ln, slope func(float64) float64) func(float64) (float64, float64) {
+	return func(t float64) (v, d float64) {
+		v = math.Exp(ln(t))
+		return v, v * slope(t)
 	}
 }
 
 var (
-	waterPressure = newPieces(minT-1, maxT+1, 2*152, pressureOf(lnSatWater))
-	icePressure   = newPieces(minT-1, triplePoint, 2*62, pressureOf(lnSatIce))
+	waterPressure = newPieces(minT-1, maxT+1, 2*152, pressureOf(lnWater, lnWaterSlope))
+	icePressure   = newPieces(minT-1, triplePoint, 2*62, pressureOf(lnIce, lnIceSlope))
 )
 
 // fastVapour is f·pws at t and its slope; t lies in the range of states.
@@ -137,20 +136,18 @@ func (o *octaves) both(p float64) (t, slope float64, ok bool) {
 }
 
 // saturationAt inverts the logarithm of a saturation pressure.
-func saturationAt(ln func(float64) (float64, float64), lo, hi float64) func(p float64) (t, slope float64) {
+func saturationAt(ln, slope func(float64) float64, lo, hi float64) func(p float64) (t, slope float64) {
 	return func(p float64) (float64, float64) {
 		target, a, b := math.Log(p), lo, hi
 		t := 0.5 * (a + b)
-		var d float64
 		for range 80 {
-			var l float64
-			l, d = ln(t)
+			l := ln(t)
 			if l > target {
 				b = t
 			} else {
 				a = t
 			}
-			next := t - (l-target)/d
+			next := t - (l-target)/slope(t)
 			if !(next >= a && next <= b) {
 				next = 0.5 * (a + b)
 			}
@@ -159,12 +156,12 @@ func saturationAt(ln func(float64) (float64, float64), lo, hi float64) func(p fl
 			}
 			t = next
 		}
-		return t, 1 / (d * p)
+		return t, 1 / (slope(t) * p)
 	}
 }
 
 var (
 	triplePressure = SatPressureWater(triplePoint)
-	waterPoint     = newOctaves(triplePressure/2, SatPressureWater(maxT), saturationAt(lnSatWater, -30, maxT+30))
-	icePoint       = newOctaves(SatPressureIce(minSat+1), triplePressure, saturationAt(lnIce, minSat-5, triplePoint+5))
+	waterPoint     = newOctaves(triplePressure/2, SatPressureWater(maxT), saturationAt(lnWater, lnWaterSlope, -30, maxT+30))
+	icePoint       = newOctaves(SatPressureIce(minSat+1), triplePressure, saturationAt(lnIce, lnIceSlope, minSat-5, triplePoint+5))
 )

@@ -35,22 +35,13 @@ func (m Model) wetBulbHumRatio(t, tw float64, water bool) float64 {
 	if !water {
 		hw = -333.4 + 2.1*tw
 	}
-	hs := m.Enthalpy(tw, ws)
-	// h(t, w) − w·hw is nearly linear in w.
-	w := ws
-	for range 4 { // each round squares an error that begins under 1e-3
-		h, _, dw := m.EnthalpyPartials(t, w)
-		w -= (h - w*hw - (hs - ws*hw)) / (dw - hw)
-	}
-	return w
+	// h(t, w) − w·hw = h(tw, ws) − ws·hw, a quadratic in w.
+	a, b := m.enthalpyInW(t)
+	return wOfEnthalpy(m.Enthalpy(tw, ws)-ws*hw, a, b-hw, hb3)
 }
 
 func (m Model) satHumRatio(t float64, water bool) float64 {
-	s, _ := m.vapour(t, water)
-	if !(m.P > s) {
-		return math.NaN()
-	}
-	return eps * s / (m.P - s)
+	return m.ratio(m.vapour(t, water))
 }
 
 // HumRatioWetBulbPartials is HumRatioWetBulb with its partial derivatives with
@@ -62,8 +53,8 @@ func (m Model) HumRatioWetBulbPartials(t, twb float64) (w, dt, dtwb, dp float64)
 		return nan4()
 	}
 	water := twb >= triplePoint
-	s, ds := m.vapour(twb, water)
-	ws, dws, _, dwsp := m.fromVapour(s, ds, 0, m.vapourSlopeP(twb, s))
+	s := m.vapour(twb, water)
+	ws, dws, _, dwsp := m.fromVapour(s, m.vapourSlope(twb, s, water), 0, m.vapourSlopeP(twb, s))
 	if m.Ideal {
 		a, b, c, e := 2501.0, 2.326, 4.186, 1.86
 		if !water {
