@@ -29,6 +29,8 @@ func (m Model) valid(t float64) bool {
 	return t >= minT && t <= maxT && m.P >= minP && m.P <= maxP
 }
 
+const enhancement0, enhancementP, enhancementT2 = 1.00062, 3.14e-8, 5.6e-7
+
 // Enhancement is the factor by which air raises the saturation pressure of
 // water vapour, f(p, t) = 1.00062 + 3.14e-8·p + 5.6e-7·t². 1 for an ideal model.
 //
@@ -38,14 +40,14 @@ func (m Model) Enhancement(t float64) float64 {
 	if m.Ideal {
 		return 1
 	}
-	return 1.00062 + 3.14e-8*m.P + 5.6e-7*t*t
+	return enhancement0 + enhancementP*m.P + enhancementT2*t*t
 }
 
 func (m Model) enhancementSlope(t float64) float64 {
 	if m.Ideal {
 		return 0
 	}
-	return 2 * 5.6e-7 * t
+	return 2 * enhancementT2 * t
 }
 
 // vapour is f·pws at t, over liquid water alone where water is set.
@@ -95,7 +97,7 @@ func (m Model) vapourSlopeP(t, s float64) float64 {
 	if m.Ideal {
 		return 0
 	}
-	return s / m.Enhancement(t) * 3.14e-8
+	return s / m.Enhancement(t) * enhancementP
 }
 
 func (m Model) fromVapour(e, de1, de2, dep float64) (w, d1, d2, dp float64) {

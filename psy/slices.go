@@ -18,41 +18,46 @@ func sameLength(n int, lens ...int) {
 // column is a Model with everything worked out that does not change along a
 // column. Its polynomials are those of Enhancement, Enthalpy and the wet bulb.
 type column struct {
-	ranged         bool // the pressure lies in the range of states
+	lo, hi         float64 // the range of states; empty where the pressure is outside it
 	p              float64
 	f0, f2         float64 // f = f0 + f2·t²
 	c, a1, a2      float64 // h = c + a1·t + a2·t² + w·(b0 + b1·t + b2·t² + b3·w)
 	b0, b1, b2, b3 float64
 	maxW           float64
-	ice            *pieces // pressure below the triple point that rh refers to
+	table          *pieces // the saturation pressure that rh refers to
+	dew            *dewTable
+	bend           float64 // what dew.bend lacks of f2/f0
+	tripleE        float64 // f·pws/f0 at the triple point
 }
 
 func (m Model) column() column {
-	k := column{ranged: m.P >= minP && m.P <= maxP, p: m.P, maxW: maxW, ice: waterPressure}
+	k := column{lo: minT, hi: maxT, p: m.P, maxW: maxW, table: overWater}
+	if !(m.P >= minP && m.P <= maxP) {
+		k.lo, k.hi = 1, 0
+	}
 	if m.Ice {
-		k.ice = icePressure
+		k.table = overIce
 	}
 	if m.Ideal {
 		k.f0, k.a1, k.b0, k.b1, k.maxW = 1, 1.006, 2501, 1.86, math.MaxFloat64
+		k.dew, k.tripleE = idealDew, m.vapour(triplePoint, true)
 		return k
 	}
 	q := m.P / 1e5
 	d := q - 1.01325
-	k.f0, k.f2 = m.Enhancement(0), 5.6e-7
+	k.f0, k.f2 = m.Enhancement(0), enhancementT2
+	k.dew, k.tripleE = realDew, m.vapour(triplePoint, true)/k.f0
+	k.bend = k.f2/k.f0 - k.dew.bend
 	k.c, k.a1, k.a2 = hc0*d, ha1+hc1*d, ha2
 	k.b0, k.b1, k.b2, k.b3 = hb0+hb4*q, hb1, hb2, hb3
 	return k
 }
 
-func (k *column) valid(t float64) bool { return k.ranged && t >= minT && t <= maxT }
+func (k *column) valid(t float64) bool { return t >= k.lo && t <= k.hi }
 
 // humRatio is HumRatio at a t in range.
 func (k *column) humRatio(t, rh float64) float64 {
-	table := waterPressure
-	if t < triplePoint {
-		table = k.ice
-	}
-	e := rh * (k.f0 + k.f2*t*t) * table.at(t)
+	e := rh * (k.f0 + k.f2*t*t) * k.table.at(t)
 	if d := k.p - e; d > 0 {
 		return eps * e / d
 	}
@@ -82,13 +87,15 @@ func (m Model) HumRatios(dst, t, rh []float64) {
 // HumRatiosPartials is HumRatioPartials over columns, without the pressure's.
 func (m Model) HumRatiosPartials(w, dt, drh, t, rh []float64) {
 	sameLength(len(w), len(dt), len(drh), len(t), len(rh))
+	k := m.column()
 	for i, x := range t {
-		if !m.valid(x) {
+		if !k.valid(x) {
 			w[i], dt[i], drh[i] = math.NaN(), math.NaN(), math.NaN()
 			continue
 		}
-		s, ds := m.fastVapour(x, !m.Ice)
-		w[i], dt[i], drh[i], _ = m.fromVapour(rh[i]*s, rh[i]*ds, s, 0)
+		p, dp := k.table.both(x)
+		f := k.f0 + k.f2*x*x
+		w[i], dt[i], drh[i], _ = m.fromVapour(rh[i]*f*p, rh[i]*(2*k.f2*x*p+f*dp), f*p, 0)
 	}
 }
 
@@ -96,12 +103,18 @@ func (m Model) HumRatiosPartials(w, dt, drh, t, rh []float64) {
 func (m Model) HumRatiosEnthalpies(w, h, t, rh []float64) {
 	sameLength(len(w), len(h), len(t), len(rh))
 	k := m.column()
+	table, nan := k.table, math.NaN()
+	w, h, rh = w[:len(t)], h[:len(t)], rh[:len(t)]
 	for i, x := range t {
-		y := math.NaN()
-		if k.valid(x) {
-			y = k.humRatio(x, rh[i])
+		y, z := nan, nan
+		if x >= k.lo && x <= k.hi {
+			e := rh[i] * (k.f0 + k.f2*x*x) * table.at(x)
+			if d := k.p - e; d > 0 {
+				y = eps * e / d
+				z = k.enthalpy(x, y)
+			}
 		}
-		w[i], h[i] = y, k.enthalpy(x, y)
+		w[i], h[i] = y, z
 	}
 }
 
@@ -147,7 +160,7 @@ func (m Model) DewPoints(dst, w []float64) {
 	k := m.column()
 	for i, x := range w {
 		td := math.NaN()
-		if k.ranged && x > 0 {
+		if k.lo < k.hi && x > 0 {
 			td = k.dewPoint(x)
 			if !(td > minSat+2 && td < maxT-1) {
 				td = m.DewPoint(x) // near the ends
@@ -157,39 +170,28 @@ func (m Model) DewPoints(dst, w []float64) {
 	}
 }
 
-// dewPoint is the dew point from the pieces, NaN beyond them. The vapour pressure
-// alone gives the temperature to 0.2 K; one step along the slope brings that to
-// 2e-4 K, at which the enhancement is right to 2e-8.
+// dewPoint is the dew point from the pieces, NaN beyond them. The table is made for
+// one pressure; a step along its slope makes up for another's enhancement, at most
+// 1e-5 of the vapour pressure.
 func (k *column) dewPoint(w float64) float64 {
-	e := k.p * w / (eps + w)
-	t, slope, ok := saturationPieces(e).both(e)
+	e := k.p * w / ((eps + w) * k.f0)
+	o := &k.dew.water
+	if e < k.tripleE {
+		o = &k.dew.ice
+	}
+	t, slope, ok := o.at(e)
 	if !ok {
 		return math.NaN()
 	}
-	d := k.f0 + k.f2*t*t - 1
-	t -= slope * d * (1 - d)
-	d = k.f0 + k.f2*t*t - 1
-	e -= e * d * (1 - d*(1-d*(1-d))) // e/f, to 1e-10
-	t, ok = saturationPieces(e).at(e)
-	if !ok {
-		return math.NaN()
-	}
-	return t
-}
-
-func saturationPieces(e float64) *octaves {
-	if e < triplePressure {
-		return icePoint
-	}
-	return waterPoint
+	return t - slope*k.bend*t*t/(1+k.dew.bend*t*t)
 }
 
 // WetBulbs is WetBulb over columns.
 func (m Model) WetBulbs(dst, t, w []float64) {
 	sameLength(len(dst), len(t), len(w))
 	k := m.column()
-	water := phase{table: waterPressure, h1: 4.186}
-	ice := phase{table: icePressure, h0: -333.4, h1: 2.1}
+	water := phase{table: overWater, h1: 4.186}
+	ice := phase{table: overIce, h0: -333.4, h1: 2.1}
 	if m.Ideal {
 		ice.h0 = -329 // 2501 less the handbook's 2830
 	}
@@ -229,11 +231,7 @@ func (k *column) wetBulb(t, w float64, ph *phase) float64 {
 	// falls from dry bulb to wet bulb as 1/(1 + a·x), a quadratic in x. The bend
 	// makes up for that falling more slowly than a saturation pressure does.
 	const bend = 1.3
-	table := waterPressure
-	if t < triplePoint {
-		table = icePressure
-	}
-	es, des, _ := table.curve(t)
+	es, des := overIce.both(t)
 	e := k.p * w / (eps + w)
 	gamma := 1.006 / (eps * 2501) * k.p
 	a := bend * des / es
@@ -246,8 +244,8 @@ func (k *column) wetBulb(t, w float64, ph *phase) float64 {
 
 	h := k.enthalpy(t, w)
 	hi := maxT
-	if ph.table == icePressure {
-		hi = triplePoint
+	if ph.table == overIce {
+		hi = triplePoint - 1e-6 // from there on the table is over water
 	}
 	for range 6 {
 		tw = min(max(tw, minT), hi)

@@ -2,152 +2,121 @@ package psy
 
 import "math"
 
-// pieces is a function on a regular grid, a cubic a piece that meets the function
-// and its slope at both ends (Hermite). For the saturation pressure on a
-// half-kelvin grid the relative error is (d ln p/dT)⁴·h⁴/384: 4e-9 at room
-// temperature, 5e-8 at -60 degC. Water and ice have a grid each, so that no piece
-// straddles the triple point.
-type pieces struct {
-	from, scale float64 // scale is pieces a unit
-	c           [][4]float64
-}
+// pieces is a saturation pressure on a regular grid of half a kelvin, a cubic a
+// piece that meets the pressure and its slope at both ends (Hermite): its relative
+// error is (d ln p/dT)⁴·h⁴/384, 4e-9 at room temperature and 5e-8 at -60 degC. The
+// triple point is on the grid, so that no piece straddles it.
+type pieces [512][4]float64 // a power of two spares the index check
 
-func newPieces(from, to float64, n int, f func(float64) (v, slope float64)) *pieces {
-	p := &pieces{from: from, scale: float64(n) / (to - from), c: make([][4]float64, n)}
-	h := (to - from) / float64(n)
-	at := func(i int) (float64, float64) {
-		v, d := f(math.Min(from+h*float64(i), to)) // rounding must not leave f's range
-		return v, d * h
-	}
-	a, da := at(0)
-	for i := range p.c {
-		b, db := at(i + 1)
-		p.c[i] = [4]float64{a, da, 3*(b-a) - 2*da - db, da + db - 2*(b-a)}
-		a, da = b, db
+const (
+	gridFrom   = triplePoint - 61 // below the range of states
+	gridScale  = 2                // pieces a kelvin
+	gridTriple = 61 * gridScale   // the first piece above the triple point
+	gridSize   = 304              // pieces, to 91 degC
+)
+
+func newPieces(water bool) *pieces {
+	p := new(pieces)
+	for i := range gridSize {
+		ln, slope := lnWater, lnWaterSlope
+		if !water && i < gridTriple {
+			ln, slope = lnIce, lnIceSlope
+		}
+		end := func(i int) (v, d float64) {
+			t := gridFrom + float64(i)/gridScale
+			v = math.Exp(ln(t))
+			return v, v * slope(t) / gridScale
+		}
+		a, da := end(i)
+		b, db := end(i + 1)
+		p[i] = [4]float64{a, da, 3*(b-a) - 2*da - db, da + db - 2*(b-a)}
 	}
 	return p
 }
 
-// at is the function at x, which lies on the grid.
-func (p *pieces) at(x float64) float64 {
-	x = (x - p.from) * p.scale
-	i := min(int(x), len(p.c)-1)
-	x -= float64(i)
-	c := &p.c[i]
+var (
+	overWater = newPieces(true)
+	overIce   = newPieces(false) // below the triple point; over water from there on
+)
+
+// place is the piece of t, in the range of states, and the place in it, 0 to 1.
+func (p *pieces) place(t float64) (c *[4]float64, x float64) {
+	x = (t - gridFrom) * gridScale
+	i := int(x)
+	return &p[uint(i)%uint(len(p))], x - float64(i)
+}
+
+// at is the pressure at t, in the range of states.
+func (p *pieces) at(t float64) float64 {
+	c, x := p.place(t)
 	return c[0] + x*(c[1]+x*(c[2]+x*c[3]))
 }
 
-// both is the function at x and its slope.
-func (p *pieces) both(x float64) (v, slope float64) {
-	x = (x - p.from) * p.scale
-	i := min(int(x), len(p.c)-1)
-	x -= float64(i)
-	c := &p.c[i]
-	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * p.scale
+// both is the pressure at t and its slope.
+func (p *pieces) both(t float64) (v, slope float64) {
+	c, x := p.place(t)
+	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * gridScale
 }
 
-// curve is the function at x, its slope and its second derivative.
-func (p *pieces) curve(x float64) (v, slope, curve float64) {
-	x = (x - p.from) * p.scale
-	i := min(int(x), len(p.c)-1)
-	x -= float64(i)
-	c := &p.c[i]
-	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * p.scale, (2*c[2] + x*6*c[3]) * p.scale * p.scale
+// curve is the pressure at t, its slope and its second derivative.
+func (p *pieces) curve(t float64) (v, slope, curve float64) {
+	c, x := p.place(t)
+	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * gridScale, (2*c[2] + x*6*c[3]) * gridScale * gridScale
 }
 
-func pressureOf(ln, slope func(float64) float64) func(float64) (float64, float64) {
-	return func(t float64) (v, d float64) {
-		v = math.Exp(ln(t))
-		return v, v * slope(t)
-	}
+// dewTable is the dew point as a function of the vapour pressure over the
+// enhancement's constant term, pws(t)·(1 + bend·t²): in pieces that are even in the
+// pressure's mantissa, whose exponent and first bits are their index.
+type dewTable struct {
+	bend       float64
+	water, ice octaves
 }
 
-var (
-	waterPressure = newPieces(minT-1, maxT+1, 2*152, pressureOf(lnWater, lnWaterSlope))
-	icePressure   = newPieces(minT-1, triplePoint, 2*62, pressureOf(lnIce, lnIceSlope))
-)
-
-// fastVapour is f·pws at t and its slope; t lies in the range of states.
-func (m Model) fastVapour(t float64, water bool) (e, dt float64) {
-	k := waterPressure
-	if t < triplePoint && !water {
-		k = icePressure
-	}
-	p, dp := k.both(t)
-	f := m.Enhancement(t)
-	return f * p, m.enhancementSlope(t)*p + f*dp
-}
-
-// octaves is the saturation temperature as a function of pressure, in pieces that
-// are even in the pressure's mantissa: the exponent and the first mantissa bits
-// of a float64 are its index.
 type octaves struct {
 	least uint64 // index of the first piece
 	c     [][4]float64
 }
 
-const mantissaBits = 6 // 64 pieces an octave
+const (
+	pieceBits  = 6 // 64 pieces an octave
+	pieceShift = 52 - pieceBits
+)
 
-func newOctaves(lo, hi float64, f func(p float64) (t, slope float64)) *octaves {
-	index := func(p float64) uint64 { return math.Float64bits(p) >> (52 - mantissaBits) }
-	o := &octaves{least: index(lo)}
+func newDewTable(bend float64) *dewTable {
+	d := &dewTable{bend: bend}
+	triple := SatPressureWater(triplePoint)
+	d.water = newOctaves(triple/2, SatPressureWater(maxT)*(1+bend*maxT*maxT), d.inverse(lnWater, lnWaterSlope, -30, maxT+30))
+	d.ice = newOctaves(SatPressureIce(minSat+1), triple, d.inverse(lnIce, lnIceSlope, minSat-5, triplePoint+5))
+	return d
+}
+
+func newOctaves(lo, hi float64, f func(p float64) (t, slope float64)) octaves {
+	index := func(p float64) uint64 { return math.Float64bits(p) >> pieceShift }
+	o := octaves{least: index(lo)}
 	for k := o.least; k <= index(hi); k++ {
-		a := math.Float64frombits(k << (52 - mantissaBits))
-		b := math.Float64frombits((k + 1) << (52 - mantissaBits))
+		a, b := math.Float64frombits(k<<pieceShift), math.Float64frombits((k+1)<<pieceShift)
 		va, da := f(a)
 		vb, db := f(b)
-		h := b - a
-		da, db = da*h, db*h
+		da, db = da*(b-a), db*(b-a)
 		o.c = append(o.c, [4]float64{va, da, 3*(vb-va) - 2*da - db, da + db - 2*(vb-va)})
 	}
 	return o
 }
 
-// piece is that of p and the place in it, 0 to 1; nil outside the pieces.
-func (o *octaves) piece(p float64) (c *[4]float64, x float64) {
-	bits := math.Float64bits(p)
-	i := bits>>(52-mantissaBits) - o.least // wraps far up for what is too small
-	if i >= uint64(len(o.c)) {
-		return nil, 0
-	}
-	// The mantissa bits below the index, as a fraction of the piece.
-	return &o.c[i], float64(bits&(1<<(52-mantissaBits)-1)) * (1.0 / (1 << (52 - mantissaBits)))
-}
-
-// at is the temperature at p; false outside the pieces.
-func (o *octaves) at(p float64) (float64, bool) {
-	c, x := o.piece(p)
-	if c == nil {
-		return 0, false
-	}
-	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), true
-}
-
-// both is nearly the temperature at p and its slope with ln p, K, without the
-// cubic's last term (under 1e-4 K); false outside the pieces.
-func (o *octaves) both(p float64) (t, slope float64, ok bool) {
-	c, x := o.piece(p)
-	if c == nil {
-		return 0, 0, false
-	}
-	// p in widths of its piece: a whole octave is 1<<mantissaBits of them.
-	widths := float64(1<<mantissaBits+math.Float64bits(p)>>(52-mantissaBits)&(1<<mantissaBits-1)) + x
-	return c[0] + x*(c[1]+x*c[2]), (c[1] + x*2*c[2]) * widths, true
-}
-
-// saturationAt inverts the logarithm of a saturation pressure.
-func saturationAt(ln, slope func(float64) float64, lo, hi float64) func(p float64) (t, slope float64) {
+// inverse is the temperature at a p of the table and its slope, by Newton's method
+// in the logarithm.
+func (d *dewTable) inverse(ln, slope func(float64) float64, lo, hi float64) func(p float64) (t, dt float64) {
 	return func(p float64) (float64, float64) {
 		target, a, b := math.Log(p), lo, hi
 		t := 0.5 * (a + b)
 		for range 80 {
-			l := ln(t)
-			if l > target {
+			off := ln(t) + math.Log1p(d.bend*t*t) - target
+			if off > 0 {
 				b = t
 			} else {
 				a = t
 			}
-			next := t - (l-target)/slope(t)
+			next := t - off/(slope(t)+2*d.bend*t/(1+d.bend*t*t))
 			if !(next >= a && next <= b) {
 				next = 0.5 * (a + b)
 			}
@@ -156,12 +125,26 @@ func saturationAt(ln, slope func(float64) float64, lo, hi float64) func(p float6
 			}
 			t = next
 		}
-		return t, 1 / (slope(t) * p)
+		return t, 1 / (p * (slope(t) + 2*d.bend*t/(1+d.bend*t*t)))
 	}
 }
 
+// at is the temperature at p and its slope with ln p, K; false outside the pieces.
+func (o *octaves) at(p float64) (t, slope float64, ok bool) {
+	bits := math.Float64bits(p)
+	i := bits>>pieceShift - o.least // wraps far up for what is too small
+	if i >= uint64(len(o.c)) {
+		return 0, 0, false
+	}
+	c := &o.c[i]
+	// The mantissa bits below the index, as a fraction of the piece.
+	x := float64(bits&(1<<pieceShift-1)) * (1.0 / (1 << pieceShift))
+	// p in widths of its piece: a whole octave is 1<<pieceBits of them.
+	widths := float64(1<<pieceBits+bits>>pieceShift&(1<<pieceBits-1)) + x
+	return c[0] + x*(c[1]+x*(c[2]+x*c[3])), (c[1] + x*(2*c[2]+x*3*c[3])) * widths, true
+}
+
 var (
-	triplePressure = SatPressureWater(triplePoint)
-	waterPoint     = newOctaves(triplePressure/2, SatPressureWater(maxT), saturationAt(lnWater, lnWaterSlope, -30, maxT+30))
-	icePoint       = newOctaves(SatPressureIce(minSat+1), triplePressure, saturationAt(lnIce, lnIceSlope, minSat-5, triplePoint+5))
+	idealDew = newDewTable(0)
+	realDew  = newDewTable(enhancementT2 / (enhancement0 + enhancementP*101325))
 )
