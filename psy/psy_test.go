@@ -87,7 +87,7 @@ func TestRealGasStates(t *testing.T) {
 // stated accuracy.
 func TestHandbookTables(t *testing.T) {
 	m := Model{P: 101325, Ice: true}
-	n := 0
+	n, exact := 0, 0
 	for _, row := range readTable(t, "testdata/published-values.csv") {
 		what, rest, ok := strings.Cut(row[1], "(")
 		if !ok || !strings.HasSuffix(row[0], " T2") && !strings.HasSuffix(row[0], " T3") {
@@ -123,10 +123,14 @@ func TestHandbookTables(t *testing.T) {
 			continue
 		}
 		n++
+		if math.Abs(got-want) <= digit {
+			exact++
+		}
 		if !(math.Abs(got-want) <= tol) {
 			t.Errorf("%s %s: %.6g, published %.6g (± %.2g)", row[0], row[1], got, want, tol)
 		}
 	}
+	t.Logf("%d of %d values to the last printed digit", exact, n)
 	if n < 60 {
 		t.Fatalf("only %d values were compared", n)
 	}
@@ -205,6 +209,16 @@ func TestPartials(t *testing.T) {
 		_, wt, wh := m.HumRatioEnthalpyPartials(tt, h)
 		near("dW/dT at h", wt, diff(func(x float64) float64 { return m.HumRatioEnthalpy(x, h) }, tt, 1e-3), 1e-7)
 		near("dW/dh", wh, diff(func(x float64) float64 { return m.HumRatioEnthalpy(tt, x) }, h, 1e-2), 1e-7)
+		_, vt, vw := m.VolumePartials(tt, w)
+		near("dv/dT", vt, diff(func(x float64) float64 { return m.Volume(x, w) }, tt, 1e-3), 1e-4)
+		near("dv/dW", vw, diff(func(x float64) float64 { return m.Volume(tt, x) }, w, 1e-6), 1e-4)
+		_, rt, rw, rp := m.RelHumidityPartials(tt, w)
+		near("drh/dT", rt, diff(func(x float64) float64 { return m.RelHumidity(x, w) }, tt, 1e-3), 1e-6)
+		near("drh/dW", rw, diff(func(x float64) float64 { return m.RelHumidity(tt, x) }, w, w*1e-5), 1e-3)
+		near("drh/dp", rp, diff(func(p float64) float64 { return withP(p).RelHumidity(tt, w) }, m.P, 10), 1e-9)
+		_, th, tw := m.TempPartials(h, w)
+		near("dT/dh", th, diff(func(x float64) float64 { return m.Temp(x, w) }, h, 1e-2), 1e-3)
+		near("dT/dW at h", tw, diff(func(x float64) float64 { return m.Temp(h, x) }, w, 1e-6), 1)
 		td, tdw, tdp := m.DewPointPartials(w)
 		if math.Abs(td) > 0.1 {
 			near("dTd/dW", tdw, diff(m.DewPoint, w, w*1e-5), 1e-3)
@@ -215,6 +229,10 @@ func TestPartials(t *testing.T) {
 			near("dW/dT at twb", bt, diff(func(x float64) float64 { return m.HumRatioWetBulb(x, tw) }, tt, 1e-3), 1e-7)
 			near("dW/dtwb", bw, diff(func(x float64) float64 { return m.HumRatioWetBulb(tt, x) }, tw, 1e-3), 1e-7)
 			near("dW/dp at twb", bp, diff(func(p float64) float64 { return withP(p).HumRatioWetBulb(tt, tw) }, m.P, 10), 1e-11)
+			_, ct, cw, cp := m.WetBulbPartials(tt, w)
+			near("dtwb/dT", ct, diff(func(x float64) float64 { return m.WetBulb(x, w) }, tt, 1e-2), 1e-2)
+			near("dtwb/dW", cw, diff(func(x float64) float64 { return m.WetBulb(tt, x) }, w, w*1e-3), 1)
+			near("dtwb/dp", cp, diff(func(p float64) float64 { return withP(p).WetBulb(tt, w) }, m.P, 100), 1e-6)
 		}
 	})
 }
@@ -240,8 +258,17 @@ func FuzzEverything(f *testing.F) {
 					t.Errorf("temperature %v outside the range", x)
 				}
 			}
+			for _, a := range properties {
+				for _, b := range properties {
+					if s, err := m.Find(a, tt, b, rh); err == nil && !(s.T >= minT && s.T <= maxT && s.W >= 0) {
+						t.Errorf("%s %v and %s %v: a state outside the range, %+v", a, tt, b, rh, s)
+					}
+				}
+			}
 			m.Enthalpy(tt, w)
 			m.Volume(tt, w)
+			m.WetBulbPartials(tt, w)
+			m.WetBulbs([]float64{0}, []float64{tt}, []float64{w})
 			m.RelHumidity(tt, w)
 			m.HumRatios([]float64{0}, []float64{tt}, []float64{rh})
 			m.DewPoints([]float64{0}, []float64{w})

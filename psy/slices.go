@@ -190,14 +190,12 @@ func (k *column) dewPoint(w float64) float64 {
 func (m Model) WetBulbs(dst, t, w []float64) {
 	sameLength(len(dst), len(t), len(w))
 	k := m.column()
-	water := phase{table: overWater, h1: 4.186}
-	ice := phase{table: overIce, h0: -333.4, h1: 2.1}
-	if m.Ideal {
-		ice.h0 = -329 // 2501 less the handbook's 2830
-	}
+	water, ice := phase{table: overWater}, phase{table: overIce}
+	water.h0, water.h1 = m.wetBulbWater(true)
+	ice.h0, ice.h1 = m.wetBulbWater(false)
 	// Where the wet bulb over liquid is the triple point.
 	ws := m.satHumRatio(triplePoint, true)
-	hs, hw := k.enthalpy(triplePoint, ws), water.h1*triplePoint
+	hs, hw := k.enthalpy(triplePoint, ws), water.h0+water.h1*triplePoint
 	for i, x := range t {
 		y := w[i]
 		if !k.valid(x) || !(y >= 0 && y < 10) {

@@ -2,24 +2,24 @@ package psy
 
 import "math"
 
-// WaterEnthalpy is the enthalpy of water at t, kJ/kg: liquid from the triple
-// point on, 4.186·t, and ice below, -333.4 + 2.1·t; liquid water at 0 degC is
-// zero. NaN outside -100 to 200 degC.
+// WaterEnthalpy is the enthalpy of water at t, kJ/kg: liquid at saturation from the
+// triple point on, and ice below, -333.4 + 2.1·t. NaN outside -100 to 200 degC.
 //
-// It is that of the wet bulb's equation, so that the balances of a wet surface
-// close. Against the saturated liquid of IAPWS SR1-86 it is up to 0.2 kJ/kg low to
-// 80 degC, 0.3 at 90, 0.6 at 100 and 15 at 200 degC.
-//
-// Source: ASHRAE Handbook of Fundamentals, psychrometrics chapter, at the
-// thermodynamic wet bulb.
+// Source: liquid, IAPWS SR1-86(1992), equations 3, 4 and 6, h = α + T/ρ′·dp/dT; to
+// 90 degC by a polynomial fitted to it, within 0.006 kJ/kg as measured. Ice: ASHRAE
+// Handbook of Fundamentals, psychrometrics chapter, at the thermodynamic wet bulb.
 func WaterEnthalpy(t float64) float64 {
 	switch {
 	case !(t >= minSat && t <= maxSat):
 		return math.NaN()
 	case t < triplePoint:
 		return -333.4 + 2.1*t
+	case t <= maxT:
+		return -0.03586013569097635 + t*(4.217280107778628+t*(-0.0013996011716167981+
+			t*(2.421519704902304e-05+t*(-1.9705228666439667e-07+t*7.003027176759153e-10))))
 	}
-	return 4.186 * t
+	alpha, slope, liquid, _ := saturatedWater(t)
+	return alpha + (t+kelvin)*slope/liquid/1e3
 }
 
 // SteamEnthalpy is the enthalpy of saturated steam at t, kJ/kg, as a steam

@@ -24,20 +24,25 @@ func (m Model) HumRatioWetBulb(t, twb float64) float64 {
 }
 
 func (m Model) wetBulbHumRatio(t, tw float64, water bool) float64 {
+	h0, h1 := m.wetBulbWater(water)
+	hw := h0 + h1*tw
 	ws := m.satHumRatio(tw, water)
-	if m.Ideal {
-		if water {
-			return ((2501-2.326*tw)*ws - 1.006*(t-tw)) / (2501 + 1.86*t - 4.186*tw)
-		}
-		return ((2830-0.24*tw)*ws - 1.006*(t-tw)) / (2830 + 1.86*t - 2.1*tw)
-	}
-	hw := 4.186 * tw
-	if !water {
-		hw = -333.4 + 2.1*tw
-	}
 	// h(t, w) − w·hw = h(tw, ws) − ws·hw, a quadratic in w.
-	a, b := m.enthalpyInW(t)
-	return wOfEnthalpy(m.Enthalpy(tw, ws)-ws*hw, a, b-hw, hb3)
+	a, b, c := m.enthalpyInW(t)
+	return wOfEnthalpy(m.Enthalpy(tw, ws)-ws*hw, a, b-hw, c)
+}
+
+// wetBulbWater is the enthalpy h0 + h1·t of the water that a wet bulb evaporates,
+// liquid or ice, kJ/kg. An ideal model's ice has the handbook's 2830 kJ/kg of
+// sublimation less its 2501 of evaporation.
+func (m Model) wetBulbWater(water bool) (h0, h1 float64) {
+	switch {
+	case water:
+		return 0, 4.186
+	case m.Ideal:
+		return -329, 2.1
+	}
+	return -333.4, 2.1
 }
 
 func (m Model) satHumRatio(t float64, water bool) float64 {
@@ -55,29 +60,42 @@ func (m Model) HumRatioWetBulbPartials(t, twb float64) (w, dt, dtwb, dp float64)
 	water := twb >= triplePoint
 	s := m.vapour(twb, water)
 	ws, dws, _, dwsp := m.fromVapour(s, m.vapourSlope(twb, s, water), 0, m.vapourSlopeP(twb, s))
-	if m.Ideal {
-		a, b, c, e := 2501.0, 2.326, 4.186, 1.86
-		if !water {
-			a, b, c = 2830, 0.24, 2.1
-		}
-		den := a + e*t - c*twb
-		dt = (-1.006 - e*w) / den
-		dtwb = (-b*ws + (a-b*twb)*dws + 1.006 + c*w) / den
-		return w, dt, dtwb, (a - b*twb) * dwsp / den
-	}
-	hw, dhw := 4.186*twb, 4.186
-	if !water {
-		hw, dhw = -333.4+2.1*twb, 2.1
-	}
+	h0, h1 := m.wetBulbWater(water)
+	hw := h0 + h1*twb
 	_, ht, hww := m.EnthalpyPartials(t, w)
 	_, st, sw := m.EnthalpyPartials(twb, ws)
 	den := hww - hw
 	dt = -ht / den
-	dtwb = (st + sw*dws - dws*hw - ws*dhw + w*dhw) / den
-	// The enthalpies' own dependence on pressure: (h_p(t,w) − h_p(twb,ws)).
-	hp := func(t, w float64) float64 { return (hb4*w + hc0 + hc1*t) / 1e5 }
-	dp = (hp(twb, ws) + (sw-hw)*dwsp - hp(t, w)) / den
+	dtwb = (st + (sw-hw)*dws - (ws-w)*h1) / den
+	dp = (m.enthalpySlopeP(twb, ws) + (sw-hw)*dwsp - m.enthalpySlopeP(t, w)) / den
 	return w, dt, dtwb, dp
+}
+
+// WetBulbPartials is WetBulb with its partial derivatives with respect to t (1), w
+// (K) and p (K/Pa). In the gap between the branches nothing moves the wet bulb, and
+// they are 0.
+func (m Model) WetBulbPartials(t, w float64) (twb, dt, dw, dp float64) {
+	twb = m.WetBulb(t, w)
+	if twb == triplePoint {
+		return twb, 0, 0, 0
+	}
+	_, wt, wtwb, wp := m.HumRatioWetBulbPartials(t, twb)
+	return twb, -wt / wtwb, 1 / wtwb, -wp / wtwb
+}
+
+// tempWetBulb is the dry bulb of air with wet bulb twb and humidity ratio w.
+func (m Model) tempWetBulb(twb, w float64) float64 {
+	if !m.valid(twb) {
+		return math.NaN()
+	}
+	water := twb >= triplePoint
+	h0, h1 := m.wetBulbWater(water)
+	ws := m.satHumRatio(twb, water)
+	t := m.Temp(m.Enthalpy(twb, ws)+(w-ws)*(h0+h1*twb), w)
+	if t < twb-1e-9 {
+		return math.NaN()
+	}
+	return t
 }
 
 // WetBulb is the thermodynamic wet bulb at dry bulb t and humidity ratio w. NaN
