@@ -86,9 +86,9 @@ func (s State) Of(p Property) float64 {
 // has the values. Supersaturated air is found, as a sensor may report it; air with
 // a negative humidity ratio is not.
 //
-// Accuracy: the two values come back within 1e-9 relative, or 1e-6 K, except for a
-// wet bulb between its curves over liquid and over ice, which comes back as the
-// triple point (see HumRatioWetBulb).
+// Accuracy: the two values come back within 1e-9 relative, or 1e-6 K. Only a wet
+// bulb given just below the triple point, of air that also has one over liquid, comes
+// back as that one (see WetBulb).
 func (m Model) Find(a Property, x float64, b Property, y float64) (State, error) {
 	t, w, err := m.solve(a, x, b, y)
 	if err != nil {

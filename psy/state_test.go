@@ -21,7 +21,7 @@ func TestFindComesBack(t *testing.T) {
 		want := m.At(tt, m.HumRatio(tt, rh))
 		for _, a := range properties {
 			for _, b := range properties {
-				if !fixes(a, b) || want.WetBulb == triplePoint && (a == WetBulb || b == WetBulb) {
+				if !fixes(a, b) {
 					continue
 				}
 				got, err := m.Find(a, want.Of(a), b, want.Of(b))
@@ -253,5 +253,32 @@ func TestMonotone(t *testing.T) {
 			rises("wet bulb of W", 0, ws, ws/3000, func(w float64) float64 { return m.WetBulb(at, w) })
 		}
 		rises("wet bulb of temperature", 8, 60, 0.02, func(x float64) float64 { return m.WetBulb(x, 0.001) })
+	}
+}
+
+// Near freezing air has a wet bulb over liquid and one over ice. Both solve the
+// equation; the one over liquid is given where there is one, and the other comes in
+// by a jump of the documented size.
+func TestWetBulbBranches(t *testing.T) {
+	for _, m := range []Model{{P: 101325}, {P: 70e3}, {P: 101325, Ideal: true}} {
+		for _, at := range []float64{0.5, 2, 5, 8, 9, 20} {
+			liquid, ice := m.wetBulbHumRatio(at, triplePoint, true), m.wetBulbHumRatio(at, triplePoint, false)
+			if !(liquid < ice) {
+				t.Fatalf("%+v at %v degC: the branches do not overlap", m, at)
+			}
+			if liquid < 0 {
+				continue // even dry air has a higher wet bulb
+			}
+			if got := m.WetBulb(at, liquid+1e-9); !(got >= triplePoint && got < triplePoint+0.001) {
+				t.Errorf("%+v at %v degC: wet bulb %v where the branch over liquid ends", m, at, got)
+			}
+			below := m.WetBulb(at, liquid-1e-9)
+			if d := triplePoint - below; !(math.Abs(d/at-0.07) <= 0.015) {
+				t.Errorf("%+v at %v degC: a jump of %v K, documented 0.07 K a kelvin", m, at, d)
+			}
+			if got := m.HumRatioWetBulb(at, below); !(math.Abs(got-liquid) <= 2e-9) {
+				t.Errorf("%+v at %v degC: over ice W %v, want %v", m, at, got, liquid)
+			}
+		}
 	}
 }

@@ -7,9 +7,12 @@ import "math"
 //
 //	h(t, W) + (Ws(t*) − W)·hw(t*) = h(t*, Ws(t*))
 //
-// Near 0 degC it is truly double-valued: over liquid and over ice. The liquid
-// branch is taken at and above the triple point, the ice branch below; between
-// the two curves lies a gap in which the triple point itself is returned.
+// Near 0 degC it is truly double-valued: air a little too dry for a wet bulb of
+// 0 degC over ice still has one over liquid. Both solve the equation; they lie about
+// 0.07 K apart for each kelvin of dry bulb. Given a wet bulb, liquid is meant from
+// the triple point on and ice below. Asked for one, the package gives that over
+// liquid wherever there is one: as the air dries, the wet bulb falls to the triple
+// point and from there jumps to the branch over ice.
 
 // HumRatioWetBulb is the humidity ratio at dry bulb t and wet bulb twb. NaN where
 // twb exceeds t, or outside the range of states.
@@ -72,13 +75,9 @@ func (m Model) HumRatioWetBulbPartials(t, twb float64) (w, dt, dtwb, dp float64)
 }
 
 // WetBulbPartials is WetBulb with its partial derivatives with respect to t (1), w
-// (K) and p (K/Pa). In the gap between the branches nothing moves the wet bulb, and
-// they are 0.
+// (K) and p (K/Pa), along its branch.
 func (m Model) WetBulbPartials(t, w float64) (twb, dt, dw, dp float64) {
 	twb = m.WetBulb(t, w)
-	if twb == triplePoint {
-		return twb, 0, 0, 0
-	}
 	_, wt, wtwb, wp := m.HumRatioWetBulbPartials(t, twb)
 	return twb, -wt / wtwb, 1 / wtwb, -wp / wtwb
 }
@@ -114,10 +113,7 @@ func (m Model) WetBulb(t, w float64) float64 {
 		if m.wetBulbHumRatio(t, triplePoint, true) <= w {
 			lo = triplePoint
 		} else {
-			water = false
-			if hi = triplePoint; m.wetBulbHumRatio(t, triplePoint, false) < w {
-				return triplePoint
-			}
+			water, hi = false, triplePoint
 		}
 	}
 	// The humidity ratio rises with the wet bulb; bisection with secant steps.
