@@ -99,7 +99,8 @@ func (m Model) tempWetBulb(twb, w float64) float64 {
 
 // WetBulb is the thermodynamic wet bulb at dry bulb t and humidity ratio w. NaN
 // for w that is negative or above saturation by more than 1 part in 1e6, and
-// outside the range of states. See HumRatioWetBulb for the branches.
+// outside the range of states. Near freezing it is the wet bulb over liquid where
+// there is one, and over ice else.
 func (m Model) WetBulb(t, w float64) float64 {
 	if !m.valid(t) || !(w >= 0) {
 		return math.NaN()
