@@ -141,9 +141,9 @@ func descending(ms []int64) bool {
 	return down > up
 }
 
-func reverse(t *rawTable) {
-	slices.Reverse(t.ms)
-	for _, c := range t.cols {
+func (p *rawPart) reverse() {
+	slices.Reverse(p.ms)
+	for _, c := range p.cols {
 		slices.Reverse(c)
 	}
 }

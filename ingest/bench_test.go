@@ -44,12 +44,12 @@ func BenchmarkCSV(b *testing.B) {
 		if err != nil {
 			b.Fatal(err)
 		}
-		var wanted []int
+		var wanted []want
 		for c := 1; c < cols; c++ {
-			wanted = append(wanted, c)
+			wanted = append(wanted, want{col: c, status: -1})
 		}
 		for b.Loop() {
-			t, err := readCSV(context.Background(), bytes.NewReader(text), "x.csv", sh, wanted, rows)
+			t, err := readCSV(context.Background(), bytes.NewReader(text), "x.csv", sh, wanted, rows, nil)
 			if err != nil || t.rows != rows {
 				b.Fatal(err, t.rows)
 			}

@@ -4,52 +4,50 @@ import (
 	"bytes"
 	"context"
 	"io"
+	"slices"
+	"strings"
 
 	"dewledger/ingest/trend"
 )
 
-// rawTable is the wanted columns of one file, before units and alignment.
-type rawTable struct {
-	ms      []int64     // UTC where zoned, else what the local clock showed
-	zoned   bool        // of all stamps
-	cols    [][]float64 // one a wanted column; missing cells by missing(reason)
-	unit    []string    // unit that the cells themselves carry, by column
-	rows    int         // data rows used
-	skipped map[string]int
-	notes   notebook
-}
-
-// Reasons for which a row is left out.
-const (
-	skipRagged  = "ragged"
-	skipBadTime = "bad time"
-	skipTooLong = "line too long"
-)
-
-func (t *rawTable) skip(why string) {
-	if t.skipped == nil {
-		t.skipped = make(map[string]int)
-	}
-	t.skipped[why]++
-}
-
 // csvReader reads the wanted columns of a delimited text in one pass over its
-// bytes. A line is a record.
+// bytes. A line is a record, unless a quoted cell runs on.
 //
 // Columns are filled by row number; a row that turns out bad is written over by
 // the next.
 type csvReader struct {
-	name   string
-	sh     *shape
-	want   []int32 // column -> slot, -1 not wanted
+	lineReader
+	wanted []want
+	slot   []int32 // column -> slot, -1 not wanted
 	last   int     // last column that must be looked at
-	t      *rawTable
-	n      int         // rows so far
+	width  int
+	tc, cc int      // columns of the time and of the time of day
+	header []string // by column
+	ms     []int64
 	cols   [][]float64 // as long as there is room for rows
-	stamps stampReader
+	flags  []statusFlag
+	flagOf []int32 // column -> flag, -1
 	marks  []badCell
-	clock  []byte // date and time of day joined
-	line   int
+	pend   []pending
+	digits []bool // by slot: a quantity, for which a word is no value
+}
+
+// pending is a bad cell of a row that has not been accepted yet.
+type pending struct {
+	slot int
+	text string
+	why  trend.Reason
+	unit string
+}
+
+// statusFlag is a column that says how good the readings of others are.
+type statusFlag struct {
+	col   int
+	slots []int
+	cell  []byte // of this row
+	seen  string // last text
+	why   trend.Reason
+	known bool
 }
 
 type badCell struct {
@@ -60,129 +58,102 @@ type badCell struct {
 
 // readCSV reads the columns of r listed in wanted. rows is a guess of how many
 // rows there are, to size the columns by.
-func readCSV(ctx context.Context, r io.Reader, name string, sh *shape, wanted []int, rows int) (*rawTable, error) {
-	t := &rawTable{cols: make([][]float64, len(wanted)), unit: make([]string, len(wanted))}
-	c := &csvReader{name: name, sh: sh, t: t, want: make([]int32, len(sh.header)), marks: make([]badCell, len(wanted))}
-	for i := range c.want {
-		c.want[i] = -1
-	}
-	c.last = max(sh.timeCol, sh.clockCol)
-	for slot, col := range wanted {
-		c.want[col] = int32(slot)
-		c.last = max(c.last, col)
-	}
-	c.stamps.order = sh.order
+func readCSV(ctx context.Context, r io.Reader, name string, sh *shape, wanted []want, rows int, abbr map[string]int64) (*rawTable, error) {
+	t := &rawTable{unit: make([]string, len(wanted))}
+	c := &csvReader{lineReader: lineReader{name: name, sh: sh, t: t}, wanted: wanted, marks: make([]badCell, len(wanted)), header: sh.header}
+	c.stamps.order, c.stamps.abbr = sh.order, abbr
+	c.place(sh.header, sh.timeCol, sh.clockCol, func(col int) int { return col })
 	c.cols = make([][]float64, len(wanted))
 	c.grow(max(rows, 16))
-	if err := c.run(ctx, r); err != nil {
+	if err := c.run(ctx, r, c); err != nil {
 		return nil, err
 	}
-	if err := c.stamps.settle(t.ms); err != nil {
+	swap, err := c.stamps.settle(c.ms)
+	if err != nil {
 		return nil, err
+	}
+	if swap {
+		swapAll(c.ms)
 	}
 	t.zoned = c.stamps.zoned
-	t.rows = c.n
+	part := rawPart{ms: c.ms}
+	t.rows = len(c.ms)
 	for slot := range c.cols {
-		t.cols[slot] = c.cols[slot][:c.n]
+		part.slots = append(part.slots, slot)
+		part.cols = append(part.cols, c.cols[slot][:t.rows])
 	}
+	t.parts = []rawPart{part}
 	for slot, m := range c.marks {
 		if m.count > 0 {
-			t.notes.addCount(m.count, "bad-cell", name, sh.header[wanted[slot]], m.line, "%s is not a number; the cell is left out as %v", quote(m.text), m.why)
+			t.notes.addCount(m.count, "bad-cell", name, sh.header[wanted[slot].col], m.line, "%s is not a reading; the cell is left out as %v", quote(m.text), m.why)
 		}
 	}
 	return t, nil
+}
+
+// place sets where the wanted columns stand; at gives the place of a column of the
+// file's first header, -1 where it is gone.
+func (c *csvReader) place(header []string, timeCol, clockCol int, at func(col int) int) {
+	n := len(header)
+	c.width, c.tc, c.cc = n, timeCol, clockCol
+	c.slot, c.flagOf = make([]int32, n), make([]int32, n)
+	for i := range n {
+		c.slot[i], c.flagOf[i] = -1, -1
+	}
+	c.flags = c.flags[:0]
+	c.last = max(timeCol, clockCol)
+	c.digits = make([]bool, len(c.wanted))
+	for slot, w := range c.wanted {
+		c.digits[slot] = w.quantity
+		col := at(w.col)
+		if col < 0 {
+			continue
+		}
+		c.slot[col] = int32(slot)
+		c.last = max(c.last, col)
+		if w.status < 0 || at(w.status) < 0 {
+			continue
+		}
+		st := at(w.status)
+		if c.flagOf[st] < 0 {
+			c.flagOf[st] = int32(len(c.flags))
+			c.flags = append(c.flags, statusFlag{col: st})
+		}
+		f := &c.flags[c.flagOf[st]]
+		f.slots = append(f.slots, slot)
+		c.last = max(c.last, st)
+	}
 }
 
 // grow makes room for rows.
 func (c *csvReader) grow(rows int) {
 	for i, v := range c.cols {
 		w := make([]float64, rows)
-		copy(w, v)
+		n := copy(w, v)
+		for n < rows { // a column that a later header lacks stays blank
+			w[n] = missing(trend.Gap)
+			n++
+		}
 		c.cols[i] = w
 	}
-	ms := make([]int64, len(c.t.ms), rows)
-	copy(ms, c.t.ms)
-	c.t.ms = ms
+	ms := make([]int64, len(c.ms), rows)
+	copy(ms, c.ms)
+	c.ms = ms
 }
 
-func (c *csvReader) run(ctx context.Context, r io.Reader) error {
-	buf := make([]byte, 256<<10)
-	eol := byte('\n')
-	if c.sh.crOnly {
-		eol = '\r'
-	}
-	have, skipping := 0, false
-	for {
-		if err := ctx.Err(); err != nil {
-			return err
-		}
-		n, err := r.Read(buf[have:])
-		have += n
-		if err != nil && err != io.EOF {
-			if len(c.t.ms) == 0 {
-				return err
-			}
-			// What came before a file broke off is whole lines, and good.
-			c.t.notes.add("truncated", c.name, "", c.line+1, "the file breaks off (%v); what comes before is used", err)
-			return ctx.Err()
-		}
-		pos := 0
-		for {
-			i := bytes.IndexByte(buf[pos:have], eol)
-			if i < 0 {
-				break
-			}
-			if skipping {
-				skipping = false
-				c.line++
-			} else {
-				c.row(buf[pos : pos+i])
-			}
-			pos += i + 1
-		}
-		have = copy(buf, buf[pos:have])
-		if err == io.EOF {
-			if have > 0 && !skipping {
-				c.row(buf[:have])
-			}
-			return nil
-		}
-		if skipping {
-			have = 0
-		} else if have == len(buf) {
-			if len(buf) < maxLine {
-				buf = append(buf, make([]byte, len(buf))...)
-				continue
-			}
-			c.t.skip(skipTooLong)
-			c.t.notes.add("line-too-long", c.name, "", c.line+1, "the line is longer than %d kB and is left out", maxLine>>10)
-			skipping, have = true, 0
-		}
-	}
-}
-
-// row reads one line.
-func (c *csvReader) row(line []byte) {
-	c.line++
-	if c.line < c.sh.dataLine {
-		return
-	}
-	if k := len(line); k > 0 && line[k-1] == '\r' {
-		line = line[:k-1]
-	}
-	if len(line) == 0 {
-		return
-	}
+// row reads one record; false where a quote in it does not close.
+func (c *csvReader) row(line []byte) bool {
 	delim, mark := c.sh.delim, c.sh.mark
-	t, n := c.t, c.n
-	if n == cap(t.ms) {
+	n := len(c.ms)
+	if n == cap(c.ms) {
 		c.grow(2 * n)
 	}
+	c.pend = c.pend[:0]
 	var stamp, clock []byte
 	col, i, ended := 0, 0, false
 	for ; col <= c.last; col++ {
 		start := i
-		if slot := c.want[col]; slot >= 0 {
+		if slot := c.slot[col]; slot >= 0 {
 			// The shape of nearly every cell, read where it stands.
 			v, next, ok := cellNumber(line, i, delim, mark)
 			if ok {
@@ -191,8 +162,7 @@ func (c *csvReader) row(line []byte) {
 			} else {
 				var body []byte
 				if body, next = cellBytes(line, i, delim); next < 0 {
-					c.torn(line)
-					return
+					return false
 				}
 				c.cols[slot][n] = c.slow(int(slot), body)
 				i = next
@@ -204,15 +174,18 @@ func (c *csvReader) row(line []byte) {
 			if i < len(line) && line[i] == '"' {
 				_, i = cellBytes(line, start, delim)
 				if i < 0 {
-					c.torn(line)
-					return
+					return false
 				}
 			}
 			switch col {
-			case c.sh.timeCol:
+			case c.tc:
 				stamp = line[start:i]
-			case c.sh.clockCol:
+			case c.cc:
 				clock = line[start:i]
+			default:
+				if f := c.flagOf[col]; f >= 0 {
+					c.flags[f].cell = line[start:i]
+				}
 			}
 		}
 		if i >= len(line) {
@@ -226,94 +199,184 @@ func (c *csvReader) row(line []byte) {
 	if !ended {
 		fields += 1 + bytes.Count(line[i:], []byte{delim})
 	}
-	if fields != len(c.sh.header) && !c.tolerable(line, fields) {
-		c.ragged(fields)
-		return
+	if fields != c.width {
+		ok, open := c.tolerable(line, fields)
+		switch {
+		case open:
+			return false
+		case ok:
+		case c.newHeader(line):
+			return true
+		default:
+			c.ragged(fields, c.width)
+			return true
+		}
 	}
 	if col <= c.last { // a short row, allowed: the cells it leaves out are blank
 		for ; col <= c.last; col++ {
-			if slot := c.want[col]; slot >= 0 {
+			if slot := c.slot[col]; slot >= 0 {
 				c.cols[slot][n] = missing(trend.Gap)
+			}
+			if f := c.flagOf[col]; f >= 0 {
+				c.flags[f].cell = nil
 			}
 		}
 	}
-	c.time(stamp, clock)
+	ms, ok := c.stamp(stamp, clock, c.cc >= 0)
+	if !ok {
+		if !c.newHeader(line) {
+			c.badTime(stamp, c.header[c.tc])
+		}
+		return true
+	}
+	if c.stamps.turned() {
+		swapAll(c.ms)
+	}
+	for i := range c.flags {
+		c.flag(&c.flags[i], n)
+	}
+	for _, p := range c.pend {
+		c.accept(p)
+	}
+	c.ms = append(c.ms, ms)
+	return true
 }
 
-// time reads the row's stamp; with it the row counts.
-func (c *csvReader) time(stamp, clock []byte) {
-	stamp = unquote(stamp)
-	if c.sh.clockCol >= 0 {
-		c.clock = append(append(append(c.clock[:0], stamp...), ' '), unquote(clock)...)
-		stamp = c.clock
+// flag applies a row's status.
+func (c *csvReader) flag(f *statusFlag, n int) {
+	if string(f.cell) != f.seen || !f.known && f.seen == "" {
+		f.seen = string(f.cell)
+		text := toUTF8(unquote(f.cell))
+		if f.why, f.known = quality(text); !f.known {
+			c.t.notes.add("status-unknown", c.name, c.header[f.col], c.line, "what %s says of a reading is not known; the reading is taken for good", quote(text))
+		}
 	}
-	ms, ok := c.stamps.read(stamp, c.t.ms)
-	if !ok {
-		c.t.skip(skipBadTime)
-		c.t.notes.add("bad-time", c.name, c.sh.header[c.sh.timeCol], c.line, "%s is not a time; the row is left out", quote(toUTF8(stamp)))
+	if f.why == trend.Present {
 		return
 	}
-	c.t.ms = append(c.t.ms, ms)
-	c.n++
+	for _, slot := range f.slots {
+		if f.why == trend.Overridden && c.wanted[slot].output {
+			c.t.notes.add("overridden", c.name, c.sh.header[c.wanted[slot].col], c.line, "the command was set by hand; it is what the equipment got, and is used")
+			continue
+		}
+		c.cols[slot][n] = missing(f.why)
+		c.t.notes.add("status-"+f.why.String(), c.name, c.sh.header[c.wanted[slot].col], c.line, "the export marks readings %s; they are left out as %v", quote(toUTF8(unquote(f.cell))), f.why)
+	}
 }
 
-func (c *csvReader) ragged(fields int) {
-	c.t.skip(skipRagged)
-	c.t.notes.add("ragged-row", c.name, "", c.line, "the row has %d cells where the header has %d; it is left out", fields, len(c.sh.header))
+// newHeader reports whether the row is a header: the file's own again, as where
+// exports were put one behind another, or another one for the same points, by which
+// the following rows are then read.
+func (c *csvReader) newHeader(line []byte) bool {
+	cells := splitLine(toUTF8(line), c.sh.delim)
+	at := map[string]int{}
+	for i, h := range cells {
+		if _, twice := at[strings.ToLower(h)]; !twice {
+			at[strings.ToLower(h)] = i
+		}
+	}
+	timeAt, ok := at[strings.ToLower(c.sh.header[c.sh.timeCol])]
+	if !ok || len(cells) < 2 || len(cells) > maxColumns {
+		return false
+	}
+	clockAt := -1
+	if c.sh.clockCol >= 0 {
+		if clockAt, ok = at[strings.ToLower(c.sh.header[c.sh.clockCol])]; !ok {
+			return false
+		}
+	}
+	lost := 0
+	find := func(col int) int {
+		if i, ok := at[strings.ToLower(strings.TrimSuffix(c.sh.header[col], againMark))]; ok {
+			return i
+		}
+		lost++
+		return -1
+	}
+	same := len(cells) == c.width
+	for i := range cells {
+		same = same && strings.EqualFold(cells[i], strings.TrimSuffix(c.header[i], againMark))
+	}
+	c.t.skip(skipHeader)
+	if same {
+		c.t.notes.add("header-repeated", c.name, "", c.line, "the header stands again between the rows")
+		return true
+	}
+	c.header = cells
+	c.place(cells, timeAt, clockAt, find)
+	for slot, v := range c.cols { // what the new header lacks is blank from here on
+		if !slices.Contains(c.slot, int32(slot)) {
+			for i := len(c.ms); i < len(v); i++ {
+				v[i] = missing(trend.Gap)
+			}
+		}
+	}
+	c.t.notes.add("header-changed", c.name, "", c.line, "another header begins here (%d columns); rows after it are read by it, and %d of the points wanted are not in it", len(cells), lost)
+	return true
 }
 
 // tolerable reports whether a row with another count of fields than the header
 // may still be used: blank cells beyond the last column, quoted delimiters
 // beyond the last wanted one, or blank cells left out where the file does that.
-func (c *csvReader) tolerable(line []byte, fields int) bool {
-	if fields < len(c.sh.header) {
-		return c.sh.shortOK && fields > max(c.sh.timeCol, c.sh.clockCol)
-	}
+// open says that a quote in it does not close.
+func (c *csvReader) tolerable(line []byte, fields int) (ok, open bool) {
 	if bytes.IndexByte(line, '"') >= 0 {
-		cells := splitLine(string(line), c.sh.delim)
-		return len(cells) == len(c.sh.header) || onlyBlank(cells[len(c.sh.header):])
+		n, blankFrom, open := countCells(line, c.sh.delim)
+		if open {
+			return false, true
+		}
+		if n >= c.width {
+			return n == c.width || blankFrom <= c.width, false
+		}
+		fields = n
+	}
+	if fields < c.width {
+		return c.sh.shortOK && fields > max(c.tc, c.cc), false
 	}
 	cut := len(line)
-	for range fields - len(c.sh.header) {
+	for range fields - c.width {
 		i := bytes.LastIndexByte(line[:cut], c.sh.delim)
 		if i < 0 || len(trimBlank(line[i+1:cut])) > 0 {
-			return false
+			return false, false
 		}
 		cut = i
 	}
-	return true
-}
-
-func onlyBlank(cells []string) bool {
-	for _, s := range cells {
-		if s != "" {
-			return false
-		}
-	}
-	return true
-}
-
-// torn leaves out a line whose quotes do not close.
-func (c *csvReader) torn(line []byte) {
-	c.ragged(len(splitLine(string(line), c.sh.delim)))
+	return true, false
 }
 
 // slow reads a cell that is no plain number.
 func (c *csvReader) slow(slot int, body []byte) float64 {
 	x := parseCell(body, c.sh.mark)
-	if x.unit != nil && c.t.unit[slot] == "" {
-		c.t.unit[slot] = toUTF8(x.unit)
+	if x.word && c.digits[slot] {
+		x.val = missing(trend.NotNumeric)
 	}
-	if x.val != x.val {
-		if why := reasonOf(x.val); why == trend.NotNumeric || why == trend.BadQuality {
-			m := &c.marks[slot]
-			if m.count == 0 {
-				m.line, m.text, m.why = c.line, toUTF8(trimBlank(body)), why
-			}
-			m.count++
+	p := pending{slot: slot}
+	if x.unit != nil && c.t.unit[slot] == "" {
+		p.unit = toUTF8(x.unit)
+	}
+	if x.val != x.val && !isDisabledWord(x.val) {
+		if why := reasonOf(x.val); why != trend.Gap {
+			p.text, p.why = toUTF8(trimBlank(body)), why
 		}
 	}
+	if p.unit != "" || p.why != trend.Present {
+		c.pend = append(c.pend, p)
+	}
 	return x.val
+}
+
+func (c *csvReader) accept(p pending) {
+	if p.unit != "" {
+		c.t.unit[p.slot] = p.unit
+	}
+	if p.why == trend.Present {
+		return
+	}
+	m := &c.marks[p.slot]
+	if m.count == 0 {
+		m.line, m.text, m.why = c.line, p.text, p.why
+	}
+	m.count++
 }
 
 // cellNumber reads a plain number from line[i:] up to the delimiter or the end

@@ -1,6 +1,7 @@
 package ingest
 
 import (
+	"fmt"
 	"math"
 	"slices"
 
@@ -31,6 +32,7 @@ func decideMeasures(cols []*rawColumn, measure string, notes *notebook) {
 			}
 		}
 	}
+	checkLabels(cols, notes)
 	scale, why := temperatureScale(cols, measure)
 	positions := positionScale(cols)
 	for _, c := range cols {
@@ -264,4 +266,110 @@ func (c *rawColumn) judgeStages(hi float64) (unit, how string) {
 		return "fraction", "counts of stages, as a share of the most that are on"
 	}
 	return "fraction", "its values stay within 0 and 1"
+}
+
+// fewest is how many values a label is judged by.
+const fewest = 24
+
+// checkLabels holds the units that headers and schedule state against the data. What
+// the file says is replaced where the data leave no doubt; what points.csv says is
+// only reported.
+func checkLabels(cols []*rawColumn, notes *notebook) {
+	wrong := map[[2]string]string{} // file and label: what indoor temperatures show
+	for _, c := range cols {
+		if !c.bind.stated || !c.decided {
+			continue
+		}
+		name, sure := c.contradicts()
+		if name == "" || name == c.measure.Name {
+			continue
+		}
+		u, _ := LookupUnit(name)
+		lo, _, hi, _ := c.stats()
+		switch {
+		case !c.bind.label:
+			notes.add("measure-mislabelled", c.file, c.header, c.bind.line, "points.csv says %s; values of %.4g to %.4g look like %s to a %s. It is read as points.csv says", c.measure.Name, lo, hi, u.Name, c.role.Title())
+		case !sure:
+			notes.add("measure-mislabelled", c.file, c.header, 0, "the file says %s; values of %.4g to %.4g look like %s to a %s. It is read as the file says; points.csv, column measure, settles it", c.measure.Name, lo, hi, u.Name, c.role.Title())
+		default:
+			if u.Dim == Temperature {
+				wrong[[2]string{c.file, c.measure.Name}] = u.Name
+			}
+			c.relabel(u, lo, hi, "", notes)
+		}
+	}
+	// A file that calls its indoor temperatures by the wrong scale does so for all.
+	for _, c := range cols {
+		name := wrong[[2]string{c.file, c.measure.Name}]
+		if name == "" || !c.bind.stated || !c.bind.label || c.role.Kind() == trend.WaterTemp || DimensionOf(c.role.Kind()) != Temperature {
+			continue
+		}
+		u, _ := LookupUnit(name)
+		lo, _, hi, _ := c.stats()
+		c.relabel(u, lo, hi, "as the file's indoor temperatures show", notes)
+	}
+}
+
+func (c *rawColumn) relabel(u Measure, lo, hi float64, why string, notes *notebook) {
+	if why == "" {
+		why = fmt.Sprintf("values of %.4g to %.4g cannot be a %s in %s", lo, hi, c.role.Title(), c.measure.Name)
+	}
+	notes.add("measure-mislabelled", c.file, c.header, 0, "the file says %s; it is read as %s: %s", c.measure.Name, u.Name, why)
+	c.set(u, "the file says "+c.measure.Name+", which the data contradict")
+}
+
+// contradicts names the unit that the data are in where that is not what is stated;
+// sure says that there is no doubt (common practice, no source: occupied rooms are
+// kept between 12 and 33 degC).
+func (c *rawColumn) contradicts() (unit string, sure bool) {
+	lo, mid, hi, n := c.stats()
+	if n < fewest {
+		return "", false
+	}
+	switch k := c.role.Kind(); k {
+	case trend.Temperature:
+		indoor := c.role == trend.RATemp || c.role == trend.ZoneTemp || c.role == trend.ZoneTempSP
+		switch {
+		case indoor && c.measure.Name == "degF" && mid >= 12 && mid <= 33 && hi < 45:
+			return "degC", true
+		case indoor && c.measure.Name == "degC" && mid >= 54 && mid <= 92 && lo > 35:
+			return "degF", true
+		case !indoor && c.measure.Name == "degC" && mid > 55 && hi < 130 && c.role.Station() != trend.NoStation:
+			return "degF", false
+		}
+	case trend.RelHumidity:
+		switch {
+		case c.measure.Name == "%" && hi <= 1.01 && mid > 0.05:
+			return "fraction", true
+		case c.measure.Name == "fraction" && mid > 1.5:
+			return "%", true
+		}
+	case trend.Position:
+		if c.measure.Name == "fraction" && hi > 1.5 && hi <= 105 {
+			return "%", true
+		}
+		if c.measure.Name == "%" && hi <= 1 && hi >= 0.5 && mid > 0 && mid < 1 {
+			return "fraction", false
+		}
+	case trend.BaroPressure:
+		if u, _ := c.judge(tempUnknown, "", 0); u != "" {
+			return u, true
+		}
+	case trend.HumRatio:
+		switch {
+		case c.measure.Name == "g/kg" && hi < 0.06 && hi > 0:
+			return "kg/kg", true
+		case c.measure.Name == "kg/kg" && mid > 1 && hi < 40:
+			return "g/kg", true
+		}
+	case trend.Pressure:
+		if c.measure.Name == "inH2O" && mid > 30 && c.role != trend.BuildingDP {
+			return "Pa", true
+		}
+		if c.measure.Name == "Pa" && c.role == trend.SAStatic && hi < 8 && mid > 0.1 {
+			return "inH2O", false
+		}
+	case trend.Concentration:
+	}
+	return "", false
 }

@@ -23,8 +23,35 @@ type part struct {
 // returns what they share.
 func (r *Result) group(files []int, unit func(string) *unitPlan) (shared []binding) {
 	var parts []part
+	singles := map[string][]column{} // by folder
+	var dirs []string
 	for _, i := range files {
-		ps, sh := r.parts(i)
+		f := r.files[i]
+		cols := f.columns(i)
+		if f.single {
+			if singles[f.dir] == nil {
+				dirs = append(dirs, f.dir)
+			}
+			singles[f.dir] = append(singles[f.dir], cols...)
+			continue
+		}
+		ps, sh := r.parts(cols, f.stem)
+		parts = append(parts, ps...)
+		shared = append(shared, sh...)
+	}
+	for _, d := range dirs { // files of one point each are to a folder what columns are to a file
+		stem := dirName(d)
+		if stem == "trends" {
+			stem = ""
+		}
+		ps, sh := r.parts(singles[d], stem)
+		for k := range ps {
+			if ps[k].name == "" {
+				if ps[k].name = trimPrefix(commonPrefix(singles[d])); ps[k].name == "" && len(singles[d]) > 1 {
+					ps[k].name = stem
+				}
+			}
+		}
 		parts = append(parts, ps...)
 		shared = append(shared, sh...)
 	}
@@ -146,34 +173,46 @@ func anyWeather(groups [][]part, weatherOnly func([]part) bool) bool {
 	return false
 }
 
-// parts finds the units within one file: by what comes before the columns' own
-// names, where that gives at least two of at least minGroup points each; else
-// the file is one.
-func (r *Result) parts(file int) (parts []part, shared []binding) {
-	f := r.files[file]
-	wx := false
-	for _, w := range tokenize(f.stem) {
-		wx = wx || nameWords[w] == tWeather
-	}
-	var cols []int
+// column is a column of a file under the name that it is judged by.
+type column struct {
+	file, col int
+	name      string
+}
+
+// columns lists the file's columns that may be points.
+func (f *source) columns(file int) []column {
+	var out []column
 	for c := range f.header {
 		if c != f.timeCol && c != f.clock && f.bare[c] != "" {
-			cols = append(cols, c)
+			out = append(out, column{file, c, f.bare[c]})
 		}
 	}
-	if wx {
-		return []part{{file: file, binds: r.guessFile(file, "weather ", true)}}, nil
+	return out
+}
+
+// parts finds the units among the columns of one file: by what comes before their own
+// names, where that gives at least two of at least minGroup points each; else the
+// file is one. stem is the file's name.
+func (r *Result) parts(cols []column, stem string) (parts []part, shared []binding) {
+	if len(cols) == 0 {
+		return nil, nil
+	}
+	file := cols[0].file
+	for _, w := range tokenize(stem) {
+		if nameWords[w] == tWeather {
+			return []part{{file: file, binds: r.guessFile(file, "weather ", true)}}, nil
+		}
 	}
 	for depth := 1; depth <= 4; depth++ {
 		groups := map[string][]int{}
 		rest := map[int]string{}
-		for _, c := range cols {
-			pre, tail := splitPrefix(f.bare[c], depth)
+		for k, c := range cols {
+			pre, tail := splitPrefix(c.name, depth)
 			if pre == "" || tail == "" {
-				pre, tail = "", f.bare[c]
+				pre, tail = "", c.name
 			}
-			groups[pre] = append(groups[pre], c)
-			rest[c] = tail
+			groups[pre] = append(groups[pre], k)
+			rest[k] = tail
 		}
 		var names []string
 		for g := range groups {
@@ -186,8 +225,8 @@ func (r *Result) parts(file int) (parts []part, shared []binding) {
 		loose := append([]int(nil), groups[""]...)
 		for _, g := range names {
 			binds := make([]binding, 0, len(groups[g]))
-			for _, c := range groups[g] {
-				binds = append(binds, r.guessColumn(file, c, rest[c], false))
+			for _, k := range groups[g] {
+				binds = append(binds, r.guessColumn(cols[k].file, cols[k].col, rest[k], false))
 			}
 			kept, _ := r.settle(append([]binding(nil), binds...))
 			if len(kept) < minGroup {
@@ -197,31 +236,28 @@ func (r *Result) parts(file int) (parts []part, shared []binding) {
 			found = append(found, part{file: file, name: trimPrefix(g), binds: binds})
 		}
 		if len(found) < 2 {
-			if len(found) == 1 && depth <= 3 && len(groups) == 1 { // one prefix for all: look behind it too
-				continue
-			}
 			continue
 		}
 		sort.Ints(loose)
-		for _, c := range loose {
-			b := r.guessColumn(file, c, f.bare[c], false)
+		for _, k := range loose {
+			b := r.guessColumn(cols[k].file, cols[k].col, cols[k].name, false)
 			b.shared = true
 			shared = append(shared, b)
 		}
 		return found, shared
 	}
-	pre := commonPrefix(f, cols)
+	pre := commonPrefix(cols)
 	p := part{file: file}
 	for _, c := range cols {
-		b := r.guessColumn(file, c, strings.TrimPrefix(f.bare[c], pre), false)
+		b := r.guessColumn(c.file, c.col, strings.TrimPrefix(c.name, pre), false)
 		if pre != "" {
-			if full := r.guessColumn(file, c, f.bare[c], false); full.score > b.score {
+			if full := r.guessColumn(c.file, c.col, c.name, false); full.score > b.score {
 				b = full
 			}
 		}
 		p.binds = append(p.binds, b)
 	}
-	if genericStem(f.stem) && trimPrefix(pre) != "" {
+	if genericStem(stem) && trimPrefix(pre) != "" {
 		p.name = trimPrefix(pre)
 	}
 	return []part{p}, nil
@@ -248,14 +284,14 @@ func splitPrefix(name string, depth int) (pre, tail string) {
 func trimPrefix(p string) string { return strings.Trim(p, separators) }
 
 // commonPrefix is what all columns begin with, up to a separator.
-func commonPrefix(f *source, cols []int) string {
+func commonPrefix(cols []column) string {
 	if len(cols) < 2 {
 		return ""
 	}
-	p := f.bare[cols[0]]
+	p := cols[0].name
 	for _, c := range cols[1:] {
 		n := 0
-		for n < len(p) && n < len(f.bare[c]) && p[n] == f.bare[c][n] {
+		for n < len(p) && n < len(c.name) && p[n] == c.name[n] {
 			n++
 		}
 		p = p[:n]

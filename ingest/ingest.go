@@ -95,11 +95,13 @@ type source struct {
 	bare    []string // without
 	units   []string
 	samples []sample
+	status  []int // by column: the column that says how good its readings are, -1: none; nil: none has one
 	timeCol int
 	clock   int
 	stem    string
 	dir     string // folder, as shown
 	rel     string // for globs: relative to trends/
+	single  bool   // one point, of which the file's name tells
 	weather bool
 	notes   notebook
 	err     error
@@ -108,12 +110,14 @@ type source struct {
 // Close lets go of what was kept of standard input and of packed Parquet files.
 func (r *Result) Close() error {
 	var errs []error
+	closed := map[*os.File]bool{} // files of one archive share it
 	for _, f := range r.files {
 		if f == nil {
 			continue
 		}
 		for _, ref := range []*fileRef{f.ref, f.spooled} {
-			if ref != nil && ref.spool != nil {
+			if ref != nil && ref.spool != nil && !closed[ref.spool] {
+				closed[ref.spool] = true
 				errs = append(errs, ref.spool.Close())
 			}
 		}
@@ -166,7 +170,7 @@ func Read(ctx context.Context, o Options) (_ *Result, err error) {
 	}
 	if len(r.files) == 0 {
 		return nil, &ConfigError{File: strings.Join(o.Paths, ", "), Msg: "there are no trend files in it",
-			Hint: "trends are .csv, .tsv, .txt or .parquet files, also .gz or .zst"}
+			Hint: "trends are .csv, .tsv, .txt or .parquet files, also .gz, .zst or in a .zip"}
 	}
 	if n := len(in.ignored); n > 0 {
 		notes.addCount(n, "file-ignored", in.ignored[0], "", 0, "%s is not a trend file by its name and was not read", quote(in.ignored[0]))
@@ -233,6 +237,9 @@ func findInput(ctx context.Context, o Options) (*input, error) {
 		if err := in.addFolder(ctx, p); err != nil {
 			return nil, err
 		}
+	}
+	if err := in.unzip(ctx); err != nil {
+		return nil, err
 	}
 	if in.site != "" && len(o.Paths) > 1 {
 		return nil, &ConfigError{File: in.site, Msg: "a site folder is read by itself, and other paths are named beside it", Hint: "run once for each site"}
@@ -342,6 +349,7 @@ func (r *Result) readConfig(o Options, in *input) error {
 			r.cfg.site.Name = filepath.Base(abs)
 		}
 	}
+	r.cfg.abbr = zoneWords(r.cfg.site.Zone)
 	r.Site = r.cfg.site
 	return nil
 }

@@ -21,13 +21,21 @@ type Source struct {
 	Skipped map[string]int // rows left out, by reason
 }
 
-// loaded is one file's wanted columns in UTC, ascending.
+// loaded is points that share their stamps, in UTC, ascending.
 type loaded struct {
-	binds []int // of the plan
-	ms    []int64
-	cols  [][]float64
-	unit  []string // units that the cells carried
-	step  time.Duration
+	binds   []int // of the plan
+	ms      []int64
+	cols    [][]float64
+	unit    []string // units that the cells carried
+	step    time.Duration
+	regular bool // logged at that step, not on change
+}
+
+// fileTable is a file of a unit as it was read.
+type fileTable struct {
+	file  *source
+	binds []int // of the plan, by slot
+	*rawTable
 }
 
 // Load reads the data of unit i: parses, converts, aligns. Its error is a
@@ -45,10 +53,10 @@ func (r *Result) Load(ctx context.Context, i int) (*trend.Unit, []Source, error)
 	var notes notebook
 	notes.merge(us.Notes)
 	var sources []Source
-	var files []loaded
+	var tables []fileTable
 	var failed error
 	for _, fi := range plan.files {
-		l, src, err := r.loadFile(ctx, fi, plan, &notes)
+		t, src, err := r.readFile(ctx, fi, plan)
 		if ctx.Err() != nil {
 			return nil, sources, ctx.Err()
 		}
@@ -63,10 +71,11 @@ func (r *Result) Load(ctx context.Context, i int) (*trend.Unit, []Source, error)
 			notes.add("file-unreadable", r.files[fi].ref.name, "", 0, "the file is left out: %v", errors.Unwrap(err))
 			continue
 		}
-		if l != nil {
-			files = append(files, *l)
+		if t != nil {
+			tables = append(tables, *t)
 		}
 	}
+	files := r.inUTC(tables, &notes)
 	if len(files) == 0 {
 		if failed == nil {
 			failed = &UnitError{Unit: us.Name, Msg: "it has no data", Hint: "check the trend files"}
@@ -89,53 +98,108 @@ func (r *Result) Load(ctx context.Context, i int) (*trend.Unit, []Source, error)
 	return u, sources, nil
 }
 
-// loadFile reads the columns of one file that the plan asks for.
-func (r *Result) loadFile(ctx context.Context, fi int, plan *unitPlan, notes *notebook) (*loaded, Source, error) {
+// readFile reads the columns of one file that the plan asks for; nil where it asks
+// for none.
+func (r *Result) readFile(ctx context.Context, fi int, plan *unitPlan) (*fileTable, Source, error) {
 	f := r.files[fi]
-	l := &loaded{}
-	var wanted []int
+	t := &fileTable{file: f}
+	var wanted []want
 	for k, b := range plan.binds {
-		if b.file == fi {
-			l.binds = append(l.binds, k)
-			wanted = append(wanted, b.col)
+		if b.file != fi {
+			continue
 		}
+		w := want{col: b.col, status: -1}
+		if f.status != nil {
+			w.status = f.status[b.col]
+		}
+		switch b.role.Kind() {
+		case trend.Switch:
+			w.output = true
+		case trend.Position:
+			w.output = true
+		default:
+			w.quantity = true
+			w.output = !b.role.Analogue() && b.role.Station() == trend.NoStation
+		}
+		t.binds = append(t.binds, k)
+		wanted = append(wanted, w)
 	}
 	if len(wanted) == 0 {
 		return nil, Source{}, nil
 	}
-	t, src, err := f.read(ctx, wanted)
+	raw, src, err := f.read(ctx, wanted, r.cfg.abbr, r.from, r.to)
 	if err != nil {
 		return nil, src, err
 	}
-	for _, n := range t.notes.list {
-		n.File = f.ref.name
-		notes.merge([]trend.Note{n})
-	}
-	if len(t.ms) == 0 {
+	t.rawTable = raw
+	if raw.rows == 0 && !raw.pruned {
 		return nil, src, errNoRows
 	}
-	r.toUTC(f, t, notes)
-	ms, cols, unsorted, repeated := sortSamples(t.ms, t.cols)
-	if unsorted > 0 {
-		notes.addCount(unsorted, "time-order", f.ref.name, "", 0, "rows out of order of time were put in order")
+	return t, src, nil
+}
+
+// inUTC brings the tables' stamps to UTC and to order, and cuts them to the period.
+func (r *Result) inUTC(tables []fileTable, notes *notebook) []loaded {
+	for i := range tables {
+		t := &tables[i]
+		for _, n := range t.notes.list {
+			n.File = t.file.ref.name
+			notes.merge([]trend.Note{n})
+		}
+		turned := false
+		for k := range t.parts {
+			if p := &t.parts[k]; descending(p.ms) {
+				p.reverse()
+				turned = true
+			}
+		}
+		if turned {
+			notes.add("time-order", t.file.ref.name, "", 0, "the file has its newest row first; it was turned round")
+		}
 	}
-	if repeated > 0 {
-		notes.addCount(repeated, "time-repeated", f.ref.name, "", 0, "times stand more than once; the last row written for a time is used")
+	clock := r.clockOf(tables, notes)
+	var out []loaded
+	for i := range tables {
+		t := &tables[i]
+		name := t.file.ref.name
+		unsorted, repeated := 0, 0
+		for k := range t.parts {
+			p := &t.parts[k]
+			if len(p.ms) == 0 {
+				continue
+			}
+			if !t.zoned {
+				clock.utc(p.ms, name, notes)
+			}
+			ms, cols, u, n := sortSamples(p.ms, p.cols)
+			unsorted, repeated = unsorted+u, repeated+n
+			l := loaded{}
+			// The step is the file's, not the period's.
+			step, regular := stepOf(ms)
+			l.step, l.regular = step, regular >= 0.6
+			from, _ := slices.BinarySearch(ms, r.from)
+			to, _ := slices.BinarySearch(ms, r.to)
+			l.ms = ms[from:to]
+			for j, c := range cols {
+				l.cols = append(l.cols, c[from:to])
+				l.binds = append(l.binds, t.binds[p.slots[j]])
+				l.unit = append(l.unit, t.unit[p.slots[j]])
+			}
+			out = append(out, l)
+		}
+		if unsorted > 0 {
+			notes.addCount(unsorted, "time-order", name, "", 0, "rows out of order of time were put in order")
+		}
+		if repeated > 0 {
+			notes.addCount(repeated, "time-repeated", name, "", 0, "times stand more than once; the last row written for a time is used")
+		}
 	}
-	from, _ := slices.BinarySearch(ms, r.from)
-	to, _ := slices.BinarySearch(ms, r.to)
-	// The step is the file's, not the period's.
-	l.step, _ = stepOf(ms)
-	l.ms = ms[from:to]
-	for _, c := range cols {
-		l.cols = append(l.cols, c[from:to])
-	}
-	l.unit = t.unit
-	return l, src, nil
+	return out
 }
 
 // read parses the file's wanted columns, with its hash.
-func (s *source) read(ctx context.Context, wanted []int) (*rawTable, Source, error) {
+// Row groups of Parquet that lie outside from to to are passed over.
+func (s *source) read(ctx context.Context, wanted []want, abbr map[string]int64, from, to int64) (*rawTable, Source, error) {
 	src := Source{Name: s.ref.name}
 	if s.format == FormatParquet {
 		// The hash is of the stored bytes, read once through.
@@ -150,7 +214,7 @@ func (s *source) read(ctx context.Context, wanted []int) (*rawTable, Source, err
 		if err != nil {
 			return nil, src, err
 		}
-		t, err := readParquet(ctx, f, s.ref.name, s.pq, wanted)
+		t, err := readParquet(ctx, f, s.ref.name, s.pq, wanted, abbr, from, to)
 		if err != nil {
 			return nil, src, err // an abandoned read may still hold the file
 		}
@@ -162,7 +226,12 @@ func (s *source) read(ctx context.Context, wanted []int) (*rawTable, Source, err
 	if err != nil {
 		return nil, src, err
 	}
-	t, err := readCSV(ctx, textReader(in), s.ref.name, s.text, wanted, s.rowsGuess())
+	var t *rawTable
+	if s.text.long != nil {
+		t, err = readLong(ctx, textReader(in), s.ref.name, s.text, wanted, abbr)
+	} else {
+		t, err = readCSV(ctx, textReader(in), s.ref.name, s.text, wanted, s.rowsGuess(), abbr)
+	}
 	if err != nil {
 		in.Close()
 		return nil, src, err
@@ -181,44 +250,21 @@ func (s *source) rowsGuess() int {
 	return int(min(s.ref.size/int64(width), 1<<20)) + 16
 }
 
-// toUTC turns the local times of a file into UTC.
-func (r *Result) toUTC(f *source, t *rawTable, notes *notebook) {
-	if descending(t.ms) {
-		reverse(t)
-		notes.add("time-order", f.ref.name, "", 0, "the file has its newest row first; it was turned round")
-	}
-	if t.zoned {
-		return
-	}
-	if r.cfg.site.Zone == time.UTC {
-		return
-	}
-	c := newClockwork(r.cfg.site.Zone)
-	for i, ms := range t.ms {
-		t.ms[i] = c.utc(ms)
-	}
-	if c.Skipped > 0 {
-		notes.addCount(c.Skipped, "clock-skipped", f.ref.name, "", 0, "times stand in the hour that clocks in %s skip in spring; if the logger keeps standard time all year, give its zone in site.timezone", r.cfg.site.Zone)
-	}
-	if c.Repeated > 0 {
-		notes.addCount(c.Repeated, "clock-repeated", f.ref.name, "", 0, "times in the hour that clocks in %s repeat in autumn were told apart by their order", r.cfg.site.Zone)
-	}
-}
-
 // axis sets the unit's time axis: the step of the site, or the finest at which
 // one of its own files is logged; from the first interval with a row to the
 // last.
 func (r *Result) axis(u *trend.Unit, files []loaded, notes *notebook) error {
 	step := r.cfg.step
 	lo, hi := int64(math.MaxInt64), int64(math.MinInt64)
-	rows := 0
+	rows, regular := 0, false
 	for _, f := range files {
 		if len(f.ms) == 0 {
 			continue
 		}
 		rows += len(f.ms)
-		if r.cfg.step == 0 && f.step > 0 && (step == 0 || f.step < step) {
-			step = f.step
+		// What is logged on change has no step; it decides only where all is.
+		if r.cfg.step == 0 && f.step > 0 && (step == 0 || f.regular && !regular || f.step < step && f.regular == regular) {
+			step, regular = f.step, f.regular
 		}
 		lo, hi = min(lo, f.ms[0]), max(hi, f.ms[len(f.ms)-1])
 	}
@@ -228,6 +274,10 @@ func (r *Result) axis(u *trend.Unit, files []loaded, notes *notebook) error {
 	if step == 0 {
 		step = 5 * time.Minute
 		notes.add("step-assumed", "", "", 0, "the file has a single time; a step of 5 min is assumed")
+	}
+	if r.cfg.step == 0 && !regular && rows > 1 {
+		step = max(step, time.Minute)
+		notes.add("step-assumed", "", "", 0, "every point is logged on change; a step of %v is assumed (site.step)", step)
 	}
 	slack := min(step.Milliseconds()/10, 30_000)
 	// Intervals begin at whole steps after the local midnight of the first day, so
@@ -325,7 +375,9 @@ func (c *rawColumn) align(ax trend.Axis, notes *notebook) *trend.Column {
 	blanks := 0
 	for i, raw := range c.s.val {
 		v := raw
-		if raw == raw {
+		if k == trend.Switch && isDisabledWord(raw) {
+			v = 0
+		} else if raw == raw {
 			v = raw*scale + shift
 			if v < lo || v > hi {
 				if isSentinel(raw) {

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"math"
 	"strconv"
+	"strings"
 
 	"dewledger/ingest/trend"
 )
@@ -14,6 +15,12 @@ import (
 const missingBits = 0x7FF8_0000_0000_0000
 
 func missing(r trend.Reason) float64 { return math.Float64frombits(missingBits | uint64(r)) }
+
+// disabledWord is the cell "disabled": of a switch it is off, of anything else no
+// reading.
+var disabledWord = math.Float64frombits(missingBits | 1<<8 | uint64(trend.Disabled))
+
+func isDisabledWord(v float64) bool { return math.Float64bits(v) == math.Float64bits(disabledWord) }
 
 func reasonOf(v float64) trend.Reason {
 	if r := trend.Reason(math.Float64bits(v) & 0xff); r != trend.Present && r < trend.NumReasons {
@@ -73,11 +80,12 @@ func plainNumber(b []byte, mark byte) (float64, bool) {
 type cell struct {
 	val  float64 // or missing(reason)
 	unit []byte  // text after the number, "°F"; nil where there was none
+	word bool    // val stands for a word, "on"
 }
 
 // parseCell reads a value cell in full: plain numbers, exponents, thousands
-// marks, a trailing unit, words for on and off, marks for missing and bad. b has
-// no surrounding quotes. mark is the decimal mark.
+// marks, a trailing unit, a trailing status, words for on and off, marks for missing
+// and bad. b has no surrounding quotes. mark is the decimal mark.
 func parseCell(b []byte, mark byte) cell {
 	b = trimBlank(b)
 	if v, ok := plainNumber(b, mark); ok {
@@ -90,25 +98,51 @@ func parseCell(b []byte, mark byte) cell {
 		return cell{val: missing(trend.NotNumeric)}
 	}
 	if v, ok := wordValue(b); ok {
-		return cell{val: v}
+		return cell{val: v, word: v == v}
 	}
 	if v, ok := looseNumber(b, mark); ok {
 		return cell{val: v}
 	}
-	// A number and its unit: "72.3 °F", "45%".
+	// A number with its unit or its status: "72.3 °F", "45%", "21.5 {stale}".
 	n := 0
 	for n < len(b) && (isDigit(b[n]) || b[n] == '.' || b[n] == ',' || ((b[n] == '-' || b[n] == '+') && n == 0)) {
 		n++
 	}
 	if n > 0 && n < len(b) && isDigit(b[n-1]) {
 		if v, ok := looseNumber(b[:n], mark); ok {
-			unit := trimBlank(b[n:])
-			if _, known := LookupUnit(string(unit)); known {
+			if unit, why, ok := afterNumber(trimBlank(b[n:])); ok {
+				if why != trend.Present {
+					v = missing(why)
+				}
 				return cell{val: v, unit: unit}
 			}
 		}
+		return cell{val: missing(trend.NotNumeric)}
+	}
+	if why, known := quality(toUTF8(b)); known && why != trend.Present {
+		return cell{val: missing(why)}
 	}
 	return cell{val: missing(trend.NotNumeric)}
+}
+
+// afterNumber reads what follows the number in a cell: a unit, a status or both.
+func afterNumber(rest []byte) (unit []byte, why trend.Reason, ok bool) {
+	if _, known := LookupUnit(string(rest)); known {
+		return rest, trend.Present, true
+	}
+	cut := bytes.IndexAny(rest, "{[(@|;")
+	if cut < 0 {
+		cut = bytes.IndexByte(rest, ' ') // "72.3 °F stale"
+	}
+	if cut >= 0 {
+		if u := trimBlank(rest[:cut]); len(u) > 0 {
+			if _, known := LookupUnit(string(u)); known {
+				unit, rest = u, rest[cut:]
+			}
+		}
+	}
+	why, ok = quality(strings.TrimLeft(toUTF8(rest), "@|; "))
+	return unit, why, ok
 }
 
 // looseNumber reads what plainNumber does not: exponents, thousands marks, the
@@ -193,7 +227,7 @@ func groups3(b []byte, c byte) bool {
 var words = map[string]float64{
 	"on": 1, "off": 0, "true": 1, "false": 0, "yes": 1, "no": 0, "active": 1, "inactive": 0,
 	"open": 1, "opened": 1, "closed": 0, "close": 0, "shut": 0, "run": 1, "running": 1, "start": 1, "started": 1, "stop": 0, "stopped": 0,
-	"occupied": 1, "unoccupied": 0, "occ": 1, "unocc": 0, "enabled": 1, "disabled": 0, "enable": 1, "disable": 0,
+	"occupied": 1, "unoccupied": 0, "occ": 1, "unocc": 0, "enabled": 1, "disabled": disabledWord, "enable": 1, "disable": 0,
 	"normal": 0, "alarm": 1, "t": 1, "f": 0,
 	"ein": 1, "aus": 0, "an": 1, "auf": 1, "zu": 0, "ja": 1, "nein": 0, "wahr": 1, "falsch": 0,
 	"marche": 1, "arret": 0, "arrêt": 0, "ouvert": 1, "ferme": 0, "fermé": 0, "vrai": 1, "faux": 0,
@@ -204,9 +238,6 @@ var words = map[string]float64{
 var missingWords = map[string]trend.Reason{
 	"-": trend.Gap, "--": trend.Gap, "---": trend.Gap, "----": trend.Gap, "–": trend.Gap, "—": trend.Gap, "nan": trend.Gap, "null": trend.Gap, "none": trend.Gap, "nil": trend.Gap,
 	"n/a": trend.Gap, "na": trend.Gap, "#n/a": trend.Gap, "?": trend.Gap, "*": trend.Gap, ".": trend.Gap, "<na>": trend.Gap, "no data": trend.Gap, "nodata": trend.Gap, "missing": trend.Gap, "blank": trend.Gap,
-	"bad": trend.BadQuality, "fault": trend.BadQuality, "error": trend.BadQuality, "fail": trend.BadQuality, "failed": trend.BadQuality, "down": trend.BadQuality,
-	"offline": trend.BadQuality, "stale": trend.BadQuality, "comm fail": trend.BadQuality, "comm failure": trend.BadQuality, "unreliable": trend.BadQuality, "invalid": trend.BadQuality,
-	"bad input": trend.BadQuality, "i/o timeout": trend.BadQuality, "i/o fail": trend.BadQuality, "out of service": trend.BadQuality, "questionable": trend.BadQuality, "uncertain": trend.BadQuality,
 	"#value!": trend.BadQuality, "#ref!": trend.BadQuality, "#div/0!": trend.BadQuality, "inf": trend.BadQuality, "-inf": trend.BadQuality, "+inf": trend.BadQuality, "infinity": trend.BadQuality,
 }
 

@@ -44,7 +44,11 @@ type fileRef struct {
 	root  string   // folder that the path may not lead out of; empty: a path the user typed
 	path  string   // under root, slash-separated, or as typed
 	spool *os.File // standard input, kept in an unlinked file
-	size  int64
+	size  int64    // unpacked, where it stands in a zip archive
+
+	entry   int   // 1-based place in a zip archive; 0: not in one
+	archive int64 // size of the archive
+	bad     error // why it cannot be read, where that is known already
 }
 
 // open opens the file as it is stored.
@@ -87,7 +91,8 @@ func packingOf(magic []byte) packing {
 	return plain
 }
 
-// stream is a file's content, unpacked, and the hash of its stored bytes.
+// stream is a file's content, unpacked, and the hash of its stored bytes (of what
+// stands in a zip archive, its bytes outside).
 type stream struct {
 	io.Reader
 	file  storedFile
@@ -99,12 +104,25 @@ type stream struct {
 // openStream opens f for one pass from its beginning. Where hashed, the bytes
 // are summed on the way; Finish reads what is left and gives the sum.
 func openStream(ctx context.Context, f *fileRef, hashed bool) (*stream, error) {
+	if f.bad != nil {
+		return nil, f.bad
+	}
 	file, err := f.open()
 	if err != nil {
 		return nil, readable(err)
 	}
 	s := &stream{file: file, close: func() {}}
-	s.count = &countReader{r: file, ctx: ctx}
+	var stored io.Reader = file
+	if f.entry > 0 {
+		e, err := f.openEntry(file)
+		if err != nil {
+			file.Close()
+			return nil, err
+		}
+		s.close = func() { e.Close() }
+		stored = &capped{r: e, left: maxInflated}
+	}
+	s.count = &countReader{r: stored, ctx: ctx}
 	var r io.Reader = s.count
 	if hashed {
 		s.sum = sha256.New()
@@ -127,7 +145,8 @@ func openStream(ctx context.Context, f *fileRef, hashed bool) (*stream, error) {
 			file.Close()
 			return nil, fmt.Errorf("not a whole zstd file: %w", err)
 		}
-		s.close = z.Close
+		inner := s.close
+		s.close = func() { z.Close(); inner() }
 		in = &capped{r: z, left: maxInflated}
 	}
 	s.Reader = in
@@ -286,7 +305,7 @@ func trendName(name string) (stem string, ok bool) {
 			break
 		}
 	}
-	for _, e := range []string{".csv", ".tsv", ".txt", ".parquet", ".pq"} {
+	for _, e := range []string{".csv", ".tsv", ".txt", ".parquet", ".pq", ".zip"} {
 		if strings.HasSuffix(low, e) && len(low) > len(e) {
 			return stem[:len(stem)-len(e)], true
 		}

@@ -10,6 +10,7 @@ import (
 
 	"github.com/apache/arrow/go/v17/parquet"
 	"github.com/apache/arrow/go/v17/parquet/file"
+	"github.com/apache/arrow/go/v17/parquet/metadata"
 	"github.com/apache/arrow/go/v17/parquet/schema"
 
 	"dewledger/ingest/trend"
@@ -63,8 +64,9 @@ func patience(f io.Seeker) time.Duration {
 	return 20*time.Second + time.Duration(size>>20)*time.Second
 }
 
-// readParquet reads the wanted columns of a file.
-func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShape, wanted []int) (*rawTable, error) {
+// readParquet reads the wanted columns of a file, or points of a long one, from row
+// groups that may hold times from from to to (ms UTC).
+func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShape, wanted []want, abbr map[string]int64, from, to int64) (*rawTable, error) {
 	var out *rawTable
 	err := within(ctx, patience(f), func(ctx context.Context) error {
 		what := "footer"
@@ -73,8 +75,14 @@ func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShap
 			if err != nil {
 				return fmt.Errorf("not a whole Parquet file: %w", err)
 			}
-			p := &parquetReader{ctx: ctx, r: r, sh: sh, what: &what, def: make([]int16, parquetBatch)}
-			t, err := p.table(wanted)
+			p := newParquetReader(ctx, r, sh, &what)
+			p.abbr = abbr
+			p.prune(from, to)
+			read := p.table
+			if sh.long != nil {
+				read = p.long
+			}
+			t, err := read(wanted)
 			out = t
 			return err
 		})
@@ -86,13 +94,16 @@ func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShap
 }
 
 type parquetReader struct {
-	ctx  context.Context
-	r    *file.Reader
-	sh   *parquetShape
-	what *string // where the reader is, for messages
-	def  []int16
-	text stampReader
-	bad  badCell
+	ctx    context.Context
+	r      *file.Reader
+	sh     *parquetShape
+	what   *string // where the reader is, for messages
+	groups []int   // row groups to read
+	def    []int16
+	text   stampReader
+	abbr   map[string]int64
+	bad    badCell
+	digits bool // of the column at hand: words are no value of it
 
 	stampIs stampKind
 
@@ -105,19 +116,65 @@ type parquetReader struct {
 	str []parquet.ByteArray
 }
 
-func (p *parquetReader) table(wanted []int) (*rawTable, error) {
-	t := &rawTable{cols: make([][]float64, len(wanted)), unit: make([]string, len(wanted))}
-	rows := int(p.r.NumRows())
+func newParquetReader(ctx context.Context, r *file.Reader, sh *parquetShape, what *string) *parquetReader {
+	p := &parquetReader{ctx: ctx, r: r, sh: sh, what: what, def: make([]int16, parquetBatch)}
+	for g := range r.NumRowGroups() {
+		p.groups = append(p.groups, g)
+	}
+	return p
+}
+
+// prune leaves out row groups whose statistics say that their times lie outside
+// from to to.
+func (p *parquetReader) prune(from, to int64) {
+	k := p.sh.timeIs
+	if from == minMS && to == maxMS || k.text || k.epoch || k.int96 || k.date || k.nothing {
+		return
+	}
+	slack := int64(0)
+	if !k.zoned {
+		slack = 26 * 3_600_000 // zones are at most this far from UTC
+	}
+	kept := p.groups[:0]
+	for _, g := range p.groups {
+		if c, err := p.r.MetaData().RowGroup(g).ColumnChunk(p.sh.timeCol); err == nil {
+			if st, err := c.Statistics(); err == nil && st != nil && st.HasMinMax() {
+				if s, ok := st.(*metadata.Int64Statistics); ok && s.Min() <= s.Max() {
+					lo, hi := int64(math.Floor(float64(s.Min())*k.scale)), int64(math.Floor(float64(s.Max())*k.scale))
+					if hi < from-slack || lo >= to+slack {
+						continue
+					}
+				}
+			}
+		}
+		kept = append(kept, g)
+	}
+	p.groups = kept
+}
+
+// rows is how many rows the groups promise.
+func (p *parquetReader) rows() int {
+	n := int64(0)
+	for _, g := range p.groups {
+		n += p.r.RowGroup(g).NumRows()
+	}
+	return int(n)
+}
+
+// stamps reads the time of every row, NaN where there is none, with the time of day
+// beside a date.
+func (p *parquetReader) stamps() ([]float64, error) {
 	// Grow with what is read, not with what a footer promises.
-	size := min(rows, 1<<20)
-	p.text.order, p.stampIs = p.sh.order, p.sh.timeIs
+	size := min(p.rows(), 1<<20)
+	p.text = stampReader{order: p.sh.order, abbr: p.abbr}
+	p.stampIs = p.sh.timeIs
 	stamps, err := p.column(p.sh.timeCol, make([]float64, 0, size), p.stampValues)
 	if err != nil {
 		return nil, err
 	}
 	if p.text.slashed && p.sh.order == orderUnknown && p.text.order == dayFirst {
 		// A later date settled the order: the earlier ones are to be read again.
-		p.text = stampReader{order: dayFirst}
+		p.text = stampReader{order: dayFirst, abbr: p.abbr}
 		if stamps, err = p.column(p.sh.timeCol, stamps[:0], p.stampValues); err != nil {
 			return nil, err
 		}
@@ -135,8 +192,29 @@ func (p *parquetReader) table(wanted []int) (*rawTable, error) {
 			stamps[i] += ofDay[i]
 		}
 	}
+	return stamps, nil
+}
+
+// settle brings text stamps to one order, and says whether all are UTC.
+func (p *parquetReader) settle(ms []int64) (zoned bool, err error) {
+	if !p.text.started {
+		return p.sh.timeIs.zoned, nil
+	}
+	swap, err := p.text.settle(ms)
+	if swap {
+		swapAll(ms)
+	}
+	return p.text.zoned, err
+}
+
+func (p *parquetReader) table(wanted []want) (*rawTable, error) {
+	t := &rawTable{unit: make([]string, len(wanted)), pruned: len(p.groups) == 0}
+	stamps, err := p.stamps()
+	if err != nil {
+		return nil, err
+	}
 	var drop []bool
-	t.ms = make([]int64, len(stamps))
+	part := rawPart{ms: make([]int64, len(stamps)), cols: make([][]float64, len(wanted))}
 	for i, v := range stamps {
 		if v != v {
 			if drop == nil {
@@ -146,43 +224,129 @@ func (p *parquetReader) table(wanted []int) (*rawTable, error) {
 			t.skip(skipBadTime)
 			continue
 		}
-		t.ms[i] = int64(v)
+		part.ms[i] = int64(v)
 	}
-	if p.text.started {
-		if err := p.text.settle(t.ms); err != nil {
-			return nil, err
-		}
-		t.zoned = p.text.zoned
-	} else {
-		t.zoned = p.sh.timeIs.zoned
-	}
-	for slot, c := range wanted {
-		p.bad = badCell{}
-		v, err := p.column(c, make([]float64, 0, len(stamps)), p.values)
+	for slot, w := range wanted {
+		part.slots = append(part.slots, slot)
+		p.bad, p.digits = badCell{}, w.quantity
+		v, err := p.column(w.col, make([]float64, 0, len(stamps)), p.values)
 		if err != nil {
 			return nil, err
 		}
 		if len(v) != len(stamps) {
-			return nil, fmt.Errorf("column %s has %d rows where the time column has %d", quote(p.sh.header[c]), len(v), len(stamps))
+			return nil, fmt.Errorf("column %s has %d rows where the time column has %d", quote(p.sh.header[w.col]), len(v), len(stamps))
 		}
-		t.cols[slot] = compact(v, drop)
-		if p.bad.count > 0 {
-			t.notes.addCount(p.bad.count, "bad-cell", "", p.sh.header[c], 0, "%s is not a number; the cell is left out as %v", quote(p.bad.text), p.bad.why)
+		if w.status >= 0 {
+			if err := p.judge(t, w, v); err != nil {
+				return nil, err
+			}
 		}
+		part.cols[slot] = compact(v, drop)
+		p.reportBad(t, p.sh.header[w.col])
 	}
 	if drop != nil {
 		n := 0
-		for i := range t.ms {
+		for i := range part.ms {
 			if !drop[i] {
-				t.ms[n] = t.ms[i]
+				part.ms[n] = part.ms[i]
 				n++
 			}
 		}
-		t.notes.addCount(len(t.ms)-n, "bad-time", "", p.sh.header[p.sh.timeCol], 0, "a row without a time is left out")
-		t.ms = t.ms[:n]
+		t.notes.addCount(len(part.ms)-n, "bad-time", "", p.sh.header[p.sh.timeCol], 0, "a row without a time is left out")
+		part.ms = part.ms[:n]
 	}
-	t.rows = len(t.ms)
+	if t.zoned, err = p.settle(part.ms); err != nil {
+		return nil, err
+	}
+	t.rows = len(part.ms)
+	t.parts = []rawPart{part}
 	return t, nil
+}
+
+func (p *parquetReader) reportBad(t *rawTable, column string) {
+	if p.bad.count > 0 {
+		t.notes.addCount(p.bad.count, "bad-cell", "", column, 0, "%s is not a reading; the cell is left out as %v", quote(p.bad.text), p.bad.why)
+	}
+}
+
+// judge takes out the readings of v whose status says that they are none.
+func (p *parquetReader) judge(t *rawTable, w want, v []float64) error {
+	var texts interner
+	idx, err := p.column(w.status, make([]float64, 0, len(v)), p.interned(&texts))
+	if err != nil {
+		return err
+	}
+	if len(idx) != len(v) {
+		return fmt.Errorf("column %s has %d rows where %s has %d", quote(p.sh.header[w.status]), len(idx), quote(p.sh.header[w.col]), len(v))
+	}
+	texts.judge(t, w, p.sh.header[w.col], idx, v)
+	return nil
+}
+
+// interner numbers the texts of a column.
+type interner struct {
+	index map[string]int
+	list  []string
+	why   []trend.Reason
+	known []bool
+	last  int
+}
+
+// number is the text's number.
+func (n *interner) number(b []byte) int {
+	if n.last < len(n.list) && n.list[n.last] == string(b) {
+		return n.last
+	}
+	if next := n.last + 1; next < len(n.list) && n.list[next] == string(b) { // texts in turn
+		n.last = next
+		return next
+	}
+	i, ok := n.index[string(b)]
+	if !ok {
+		if n.index == nil {
+			n.index = map[string]int{}
+		}
+		if len(n.list) >= maxPoints || len(b) > maxHeader {
+			return -1
+		}
+		i = len(n.list)
+		n.list = append(n.list, string(b))
+		n.index[n.list[i]] = i
+	}
+	n.last = i
+	return i
+}
+
+// judge takes out the readings of v whose status, by number, says that they are
+// none.
+func (n *interner) judge(t *rawTable, w want, name string, idx, v []float64) {
+	for i, x := range idx {
+		if x != x || x < 0 {
+			continue
+		}
+		for k := len(n.why); k < len(n.list); k++ {
+			why, known := quality(toUTF8([]byte(n.list[k])))
+			n.why, n.known = append(n.why, why), append(n.known, known)
+		}
+		k := int(x)
+		switch {
+		case !n.known[k]:
+			t.notes.add("status-unknown", "", name, 0, "what %s says of a reading is not known; the reading is taken for good", quote(n.list[k]))
+		case n.why[k] == trend.Present:
+		case n.why[k] == trend.Overridden && w.output:
+			t.notes.add("overridden", "", name, 0, "the command was set by hand; it is what the equipment got, and is used")
+		default:
+			t.notes.add("status-"+n.why[k].String(), "", name, 0, "the export marks readings %s; they are left out as %v", quote(n.list[k]), n.why[k])
+			v[i] = missing(n.why[k])
+		}
+	}
+}
+
+// interned reads a column of text as the numbers of its texts.
+func (p *parquetReader) interned(n *interner) func(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
+	return func(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
+		return p.batch(cr, dst, func(float64) float64 { return -1 }, func(b parquet.ByteArray) float64 { return float64(n.number(b)) }, nil)
+	}
 }
 
 func compact(v []float64, drop []bool) []float64 {
@@ -202,7 +366,7 @@ func compact(v []float64, drop []bool) []float64 {
 // column appends all of a column, row group by row group, nulls as missing. get
 // appends up to n values of a chunk with their definition levels.
 func (p *parquetReader) column(c int, dst []float64, get func(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error)) ([]float64, error) {
-	for g := range p.r.NumRowGroups() {
+	for _, g := range p.groups {
 		*p.what = fmt.Sprintf("row group %d, column %s", g, quote(p.sh.header[c]))
 		rg := p.r.RowGroup(g)
 		cr, err := rg.Column(c)
@@ -266,8 +430,11 @@ func sized[T any](b []T) []T {
 func (p *parquetReader) values(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
 	return p.batch(cr, dst, finite, func(b parquet.ByteArray) float64 {
 		x := parseCell(b, '.')
-		if x.val != x.val {
-			if why := reasonOf(x.val); why == trend.NotNumeric || why == trend.BadQuality {
+		if x.word && p.digits {
+			x.val = missing(trend.NotNumeric)
+		}
+		if x.val != x.val && !isDisabledWord(x.val) {
+			if why := reasonOf(x.val); why != trend.Gap {
 				if p.bad.count == 0 {
 					p.bad.text, p.bad.why = toUTF8(b), why
 				}
@@ -286,7 +453,7 @@ func (p *parquetReader) stampValues(cr file.ColumnChunkReader, dst []float64) ([
 		num = epochMS
 	}
 	return p.batch(cr, dst, num, func(b parquet.ByteArray) float64 {
-		ms, ok := p.text.read(trimBlank(b), nil)
+		ms, ok := p.text.read(trimBlank(b))
 		if !ok {
 			return math.NaN()
 		}

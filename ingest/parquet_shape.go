@@ -26,6 +26,15 @@ type parquetShape struct {
 	order   order    // of dates written as text
 	refused []string // columns that are nested or of a type that is no reading, with why
 	usable  []bool
+	text    []bool       // by column
+	long    *parquetLong // of a narrow file; nil: a column a point
+}
+
+// parquetLong says how a narrow Parquet file is laid out.
+type parquetLong struct {
+	longShape
+	samples []sample
+	units   []string
 }
 
 // stampKind is how a Parquet column holds times.
@@ -42,7 +51,7 @@ type stampKind struct {
 // sniffParquet reads the footer.
 func sniffParquet(ctx context.Context, f storedFile, timeColumn string) (*parquetShape, error) {
 	var sh *parquetShape
-	err := within(ctx, patience(f), func(context.Context) error {
+	err := within(ctx, patience(f), func(ctx context.Context) error {
 		what := "footer"
 		return guard(&what, func() error {
 			r, err := file.NewParquetReader(f)
@@ -50,8 +59,13 @@ func sniffParquet(ctx context.Context, f storedFile, timeColumn string) (*parque
 				return fmt.Errorf("not a whole Parquet file: %w", err)
 			}
 			s, err := shapeOf(r, timeColumn)
-			sh = s
-			return err
+			if sh = s; err != nil {
+				return err
+			}
+			if s.isLong() {
+				return newParquetReader(ctx, r, s, &what).scanLong()
+			}
+			return nil
 		})
 	})
 	if err != nil {
@@ -66,7 +80,7 @@ func shapeOf(r *file.Reader, timeColumn string) (*parquetShape, error) {
 	if n > maxColumns {
 		return nil, fmt.Errorf("it has %d columns; at most %d are read", n, maxColumns)
 	}
-	sh := &parquetShape{timeCol: -1, clock: -1, rows: r.NumRows(), header: make([]string, n), units: make([]string, n), usable: make([]bool, n)}
+	sh := &parquetShape{timeCol: -1, clock: -1, rows: r.NumRows(), header: make([]string, n), units: make([]string, n), usable: make([]bool, n), text: make([]bool, n)}
 	if sh.rows < 0 || sh.rows > maxParquetRows {
 		return nil, fmt.Errorf("its footer promises %d rows", sh.rows)
 	}
@@ -83,6 +97,7 @@ func shapeOf(r *file.Reader, timeColumn string) (*parquetShape, error) {
 			sh.refused = append(sh.refused, fmt.Sprintf("%s is of type %v", quote(sh.header[i]), c.PhysicalType()))
 			continue
 		}
+		sh.text[i] = c.PhysicalType() == parquet.Types.ByteArray
 		_, sh.units[i] = splitHeaderUnit(sh.header[i])
 		k, score := stampKindOf(c)
 		named := timeNamed(sh.header[i])

@@ -17,6 +17,7 @@ type binding struct {
 	role    trend.Role
 	measure Measure // where stated
 	stated  bool
+	label   bool    // stated by the file, not by points.csv
 	scale   float64 // of points.csv
 	offset  float64
 	band    trend.Band
@@ -138,7 +139,7 @@ func (r *Result) scheduled(file, col int, p *point) binding {
 func (r *Result) labelled(b *binding, f *source) {
 	if u, ok := LookupUnit(f.units[b.col]); ok {
 		if _, _, fits := u.toKind(b.role.Kind()); fits {
-			b.measure, b.stated = u, true
+			b.measure, b.stated, b.label = u, true, true
 		}
 	}
 }

@@ -129,7 +129,7 @@ func readPoints(file string, text []byte) ([]*point, error) {
 }
 
 func readPoint(line int, cell func(string) string, fail func(line int, field, hint, format string, args ...any)) (*point, bool) {
-	p := &point{line: line, unit: cell("unit"), file: cell("file"), column: cell("column"), scale: 1, note: cell("note")}
+	p := &point{line: line, unit: cell("unit"), file: cell("file"), column: strings.Join(strings.Fields(cell("column")), " "), scale: 1, note: cell("note")}
 	ok := true
 	bad := func(field, hint, format string, args ...any) {
 		ok = false

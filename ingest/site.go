@@ -36,6 +36,7 @@ type siteConfig struct {
 	step        time.Duration
 	timeColumn  string
 	order       order
+	abbr        map[string]int64 // of the site's zone, ms ahead of UTC
 	weather     string
 	weatherLine int
 	defaults    trend.Plant

@@ -31,6 +31,7 @@ type shape struct {
 	clockCol int // column of the time of day where the date stands alone; -1
 	order    order
 	shortOK  bool       // rows leave out blank cells at their end
+	long     *longShape // of a narrow file, one row a reading; nil: a column a point
 	rows     [][]string // sample of data rows
 }
 
@@ -58,6 +59,7 @@ func sniffText(head []byte, whole bool, timeColumn string) (*shape, error) {
 		lines = append(lines, toUTF8(bytes.TrimRight(head[:i], "\r")))
 		head = head[min(i+1, len(head)):]
 	}
+	lines = joinRunOn(lines)
 	if len(lines) == 0 && !whole {
 		return nil, fmt.Errorf("its first line is longer than %d kB", headBytes>>10)
 	}
@@ -83,6 +85,41 @@ func sniffText(head []byte, whole bool, timeColumn string) (*shape, error) {
 	}
 	best.crOnly = crOnly
 	return best, nil
+}
+
+// joinRunOn puts lines together that a quoted cell runs over. The lines it took in
+// are left blank, so that the others keep their numbers.
+func joinRunOn(lines []string) []string {
+	open := func(s string) bool { // a quote at the start of a cell that does not close, whatever parts the cells
+		n := 0
+		for _, d := range []byte{',', ';', '\t', '|'} {
+			if strings.IndexByte(s, d) < 0 {
+				continue
+			}
+			n++
+			if _, _, o := countCells([]byte(s), d); !o {
+				return false
+			}
+		}
+		return n > 0
+	}
+	for i := 0; i < len(lines); i++ {
+		if !strings.Contains(lines[i], `"`) || !open(lines[i]) {
+			continue
+		}
+		whole := lines[i]
+		for j := i + 1; j < len(lines) && j <= i+maxRunOn; j++ {
+			whole += "\n" + lines[j]
+			if strings.Contains(lines[j], `"`) && !open(whole) {
+				lines[i] = whole
+				for k := i + 1; k <= j; k++ {
+					lines[k] = ""
+				}
+				break
+			}
+		}
+	}
+	return lines
 }
 
 var (
@@ -228,7 +265,7 @@ func (s *shape) nameColumns(rows [][]string, first int) {
 	for c := range width {
 		name := ""
 		if h >= 0 && c < len(rows[h]) {
-			name = strings.TrimSpace(rows[h][c])
+			name = strings.Join(strings.Fields(rows[h][c]), " ") // a header may run over lines
 		}
 		if len(name) > maxHeader {
 			name = name[:maxHeader]

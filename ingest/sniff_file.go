@@ -5,12 +5,16 @@ import (
 	"context"
 	"errors"
 	"path"
+	"slices"
 	"sort"
 	"strings"
 	"time"
 
 	"dewledger/ingest/trend"
 )
+
+// againMark follows the name of a column that stands twice.
+const againMark = " (again)"
 
 // sniffFile reads a file's head. What is wrong with it is its err.
 func sniffFile(ctx context.Context, f *fileRef, cfg *siteConfig, trends string) *source {
@@ -29,17 +33,47 @@ func sniffFile(ctx context.Context, f *fileRef, cfg *siteConfig, trends string) 
 		return s
 	}
 	s.bare = make([]string, len(s.header))
+	for _, st := range s.status {
+		if st >= 0 {
+			s.notes.add("status-column", s.ref.name, s.header[st], 0, "the column says how good the readings of another are")
+		}
+	}
 	seen := map[string]int{}
 	for i, h := range s.header {
-		s.bare[i], _ = splitHeaderUnit(h)
+		bare, unit := splitHeaderUnit(h)
+		if s.bare[i] = bare; s.units[i] == "" {
+			s.units[i] = unit
+		}
+		if s.status != nil && slices.Contains(s.status, i) {
+			s.bare[i] = "" // no point
+		}
 		if first, twice := seen[h]; twice && i != s.timeCol {
 			s.notes.add("column-repeated", f.name, h, 0, "columns %d and %d have the same name; the first is used", first+1, i+1)
-			s.bare[i], s.header[i] = "", h+" (again)"
+			s.bare[i], s.header[i] = "", h+againMark
 		} else {
 			seen[h] = i
 		}
 	}
+	s.nameSingle()
 	return s
+}
+
+// nameSingle gives the one column of values of a file its name from the file's, where
+// its own says nothing: "Value".
+func (s *source) nameSingle() {
+	at := -1
+	for i := range s.header {
+		if i == s.timeCol || i == s.clock || s.bare[i] == "" || unitHeads[foldHead(s.bare[i])] {
+			continue
+		}
+		if at >= 0 {
+			return
+		}
+		at = i
+	}
+	if at >= 0 && s.stem != "" && valueHeads[foldHead(s.bare[at])] {
+		s.bare[at], s.single = unitStem(s.stem), true
+	}
 }
 
 func hintFor(err error) string {
@@ -93,11 +127,33 @@ func (s *source) sniff(ctx context.Context, cfg *siteConfig) error {
 	if s.text.headLine == 0 {
 		s.notes.add("no-header", s.ref.name, "", 0, "the file has no row of column names; columns are named by their number")
 	}
+	defer func() { s.text.rows = nil }()
+	if s.text.long = isLong(s.text); s.text.long != nil {
+		return s.sniffLong(ctx)
+	}
 	s.samples = make([]sample, len(s.header))
 	for c := range s.samples {
 		s.samples[c] = sampleOf(s.text.rows, c, s.text.mark)
 	}
-	s.text.rows = nil
+	s.status = statusColumns(s.header, s.text.rows, s.text.mark)
+	return nil
+}
+
+// sniffLong reads a narrow file through for the names of its points, which take the
+// place of columns.
+func (s *source) sniffLong(ctx context.Context) error {
+	in, err := openStream(ctx, s.ref, false)
+	if err != nil {
+		return err
+	}
+	defer in.Close()
+	if s.units, s.samples, err = scanLong(ctx, textReader(in), s.ref.name, s.text, &s.notes); err != nil {
+		return err
+	}
+	s.header, s.timeCol, s.clock = s.text.long.names, -1, -1
+	if len(s.header) == 0 {
+		return errNoRows
+	}
 	return nil
 }
 
@@ -113,6 +169,16 @@ func (s *source) sniffParquet(ctx context.Context, cfg *siteConfig) error {
 	s.pq.order = cfg.order
 	s.header, s.units, s.timeCol, s.clock = s.pq.header, s.pq.units, s.pq.timeCol, s.pq.clock
 	s.samples = make([]sample, len(s.header))
+	if l := s.pq.long; l != nil {
+		s.header, s.units, s.samples, s.timeCol, s.clock = l.names, l.units, l.samples, -1, -1
+	} else {
+		s.status = statusColumns(s.header, nil, '.')
+		for c, st := range s.status {
+			if st >= 0 && !s.pq.text[st] { // numbers are readings
+				s.status[c] = -1
+			}
+		}
+	}
 	for _, what := range s.pq.refused {
 		s.notes.add("column-refused", s.ref.name, "", 0, "column %s and is not read", what)
 	}
@@ -130,7 +196,7 @@ func (s *source) parquetFile(ctx context.Context) (storedFile, error) {
 		return nil, readable(err)
 	}
 	magic := make([]byte, 4)
-	if _, err := f.ReadAt(magic, 0); err != nil || packingOf(magic) == plain {
+	if _, err := f.ReadAt(magic, 0); s.ref.entry == 0 && (err != nil || packingOf(magic) == plain) {
 		return f, nil
 	}
 	f.Close()
@@ -150,29 +216,33 @@ func (s *source) parquetFile(ctx context.Context) (storedFile, error) {
 func sampleOf(rows [][]string, c int, mark byte) sample {
 	sm := sample{twoState: true}
 	for _, r := range rows {
-		low := strings.ToLower(strings.TrimSpace(r[c]))
-		x := parseCell([]byte(r[c]), mark)
-		if x.val != x.val {
-			continue
-		}
-		if _, isWord := words[low]; isWord {
-			sm.words = true
-		}
-		if sm.n == 0 || x.val < sm.lo {
-			sm.lo = x.val
-		}
-		if sm.n == 0 || x.val > sm.hi {
-			sm.hi = x.val
-		}
-		if x.val != 0 && x.val != 1 {
-			sm.twoState = false
-		}
-		sm.n++
+		sm.add([]byte(r[c]), mark)
 	}
 	if sm.n == 0 {
 		sm.twoState = false
 	}
 	return sm
+}
+
+func (sm *sample) add(cell []byte, mark byte) {
+	x := parseCell(cell, mark)
+	if isDisabledWord(x.val) {
+		x.val, x.word = 0, true
+	}
+	if x.val != x.val {
+		return
+	}
+	sm.words = sm.words || x.word
+	if sm.n == 0 || x.val < sm.lo {
+		sm.lo = x.val
+	}
+	if sm.n == 0 || x.val > sm.hi {
+		sm.hi = x.val
+	}
+	if x.val != 0 && x.val != 1 {
+		sm.twoState = false
+	}
+	sm.n++
 }
 
 // period reads --from and --to. A date means from its midnight, or through its

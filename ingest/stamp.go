@@ -13,6 +13,9 @@ type stampReader struct {
 	slashed bool
 	started bool
 	zoned   bool
+	turn    bool             // the stamps read so far are to be swapped
+	abbr    map[string]int64 // ms that the site's zone is ahead of UTC under its abbreviations
+	word    string           // first zone word that says nothing
 
 	text       []byte // last stamp read in full
 	from, to   int    // its clock, as hh:mm or hh:mm:ss
@@ -21,9 +24,16 @@ type stampReader struct {
 	fastUsable bool
 }
 
-// read reads one stamp; seen are the stamps before it, which are put right where
-// this one settles that days come first.
-func (s *stampReader) read(b []byte, seen []int64) (int64, bool) {
+// turned reports, once, that the last stamp settled that days come first, so that
+// day and month of those before it are to be swapped.
+func (s *stampReader) turned() bool {
+	t := s.turn
+	s.turn = false
+	return t
+}
+
+// read reads one stamp.
+func (s *stampReader) read(b []byte) (int64, bool) {
 	if s.fastUsable && len(b) == len(s.text) && string(b[:s.from]) == string(s.text[:s.from]) && string(b[s.to:]) == string(s.text[s.to:]) {
 		if ofDay, ok := shortClock(b[s.from:s.to], s.twelve); ok {
 			return s.ms + ofDay - s.ofDay, true
@@ -32,6 +42,13 @@ func (s *stampReader) read(b []byte, seen []int64) (int64, bool) {
 	c, ok := parseStamp(b, s.order)
 	if !ok || c.form == formTimeOnly {
 		return 0, false
+	}
+	if c.word != "" {
+		if off, ok := s.abbr[c.word]; ok {
+			c.ms, c.zoned = c.ms-off, true
+		} else if s.word == "" {
+			s.word = c.word
+		}
 	}
 	if !s.started {
 		s.started, s.zoned = true, c.zoned
@@ -43,10 +60,7 @@ func (s *stampReader) read(b []byte, seen []int64) (int64, bool) {
 		if s.order == orderUnknown && !s.decided {
 			switch {
 			case c.a > 12:
-				s.order, s.decided = dayFirst, true
-				for i, ms := range seen {
-					seen[i] = swapDayMonth(ms)
-				}
+				s.order, s.decided, s.turn = dayFirst, true, true
 			case c.b > 12:
 				s.order, s.decided = monthFirst, true
 			}
@@ -110,10 +124,11 @@ var errOrder = fmt.Errorf("its dates can be read day first or month first")
 
 // settle decides, at the end of a file whose dates never went past 12, which
 // order they are in: the one in which the record goes on from midnight to
-// midnight while in the other it leaps by months.
-func (s *stampReader) settle(ms []int64) error {
+// midnight while in the other it leaps by months. swap says that day and month are
+// to be swapped.
+func (s *stampReader) settle(ms []int64) (swap bool, err error) {
 	if !s.slashed || s.order != orderUnknown || s.decided {
-		return nil
+		return false, nil
 	}
 	leaps := func(of func(int64) int64) (n, days int) {
 		for i := 1; i < len(ms); i++ {
@@ -132,14 +147,11 @@ func (s *stampReader) settle(ms []int64) error {
 	swapped, _ := leaps(swapDayMonth)
 	switch {
 	case days >= 2 && asRead == 0 && swapped == days:
-		return nil
+		return false, nil
 	case days >= 2 && swapped == 0 && asRead == days:
-		for i := range ms {
-			ms[i] = swapDayMonth(ms[i])
-		}
-		return nil
+		return true, nil
 	}
-	return errOrder
+	return false, errOrder
 }
 
 func floorDiv(a, b int64) int64 {

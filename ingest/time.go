@@ -37,6 +37,7 @@ type civil struct {
 	form  stampForm
 	ms    int64
 	zoned bool
+	word  string // letters after the clock that may name a zone, lower case
 	a, b  uint8
 }
 
@@ -162,10 +163,11 @@ func parseStamp(b []byte, o order) (civil, bool) {
 		return civil{}, false
 	}
 	c.ms += ms
-	off, zoned, ok := s.zone()
+	off, zoned, word, ok := s.zone()
 	if !ok || s.i != len(b) {
 		return civil{}, false
 	}
+	c.word = word
 	if zoned {
 		c.ms -= off
 		c.zoned = true
@@ -387,33 +389,33 @@ func (s *scanner) meridiemAhead() bool {
 }
 
 // zone reads Z, UTC, GMT, +01:00, +0100, +01. Other zone letters (EST, CET) are
-// passed over: the site's zone says what they mean.
-func (s *scanner) zone() (off int64, zoned, ok bool) {
+// handed on: the site's zone says what they mean.
+func (s *scanner) zone() (off int64, zoned bool, word string, ok bool) {
 	s.blanks()
 	if s.i == len(s.b) {
-		return 0, false, true
+		return 0, false, "", true
 	}
 	c := s.peek()
 	if c == '[' { // "...+01:00[Europe/Lisbon]"
 		s.i = len(s.b)
-		return 0, false, true
+		return 0, false, "", true
 	}
 	if c|0x20 >= 'a' && c|0x20 <= 'z' {
 		switch w := s.word(); {
 		case w == "z" || w == "utc" || w == "gmt":
 			s.blanks()
 			if c := s.peek(); c != '+' && c != '-' {
-				return 0, true, true
+				return 0, true, "", true
 			}
 		case len(w) >= 2 && len(w) <= 5:
-			return 0, false, true
+			return 0, false, w, true
 		default:
-			return 0, false, false
+			return 0, false, "", false
 		}
 	}
 	c = s.peek()
 	if c != '+' && c != '-' {
-		return 0, false, false
+		return 0, false, "", false
 	}
 	s.i++
 	h, n := s.number()
@@ -425,14 +427,14 @@ func (s *scanner) zone() (off int64, zoned, ok bool) {
 		if s.peek() == ':' {
 			s.i++
 			if m, n = s.number(); n != 2 {
-				return 0, false, false
+				return 0, false, "", false
 			}
 		}
 	default:
-		return 0, false, false
+		return 0, false, "", false
 	}
 	if h > 15 || m > 59 {
-		return 0, false, false
+		return 0, false, "", false
 	}
 	off = int64(h)*3_600_000 + int64(m)*60_000
 	if c == '-' {
@@ -442,7 +444,7 @@ func (s *scanner) zone() (off int64, zoned, ok bool) {
 	if s.peek() == '[' {
 		s.i = len(s.b)
 	}
-	return off, true, true
+	return off, true, "", true
 }
 
 // parseCount reads seconds or milliseconds since 1970 and spreadsheet days:

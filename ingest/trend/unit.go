@@ -43,11 +43,14 @@ const (
 	BadQuality        // the export marked the sample as bad
 	NotNumeric        // the cell held text that is no number
 	OutOfRange        // outside what such an instrument can report
-	Stale             // a change-of-value point held past its age
+	Stale             // held past its age, or called stale by the export
+	Overridden        // set by hand: no reading
+	Disabled          // the export calls the point disabled or out of service
+	Down              // the export calls the point down or its controller unreachable
 	NumReasons
 )
 
-var reasons = [NumReasons]string{"present", "gap", "bad quality", "not numeric", "out of range", "stale"}
+var reasons = [NumReasons]string{"present", "gap", "bad quality", "not numeric", "out of range", "stale", "overridden", "disabled", "down"}
 
 // String is the reason in words.
 func (r Reason) String() string { return reasons[r] }
