@@ -25,6 +25,7 @@ type csvReader struct {
 	header []string // by column
 	ms     []int64
 	cols   [][]float64 // as long as there is room for rows
+	absent []int       // slots that the header in force lacks
 	flags  []statusFlag
 	flagOf []int32 // column -> flag, -1
 	marks  []badCell
@@ -129,11 +130,7 @@ func (c *csvReader) place(header []string, timeCol, clockCol int, at func(col in
 func (c *csvReader) grow(rows int) {
 	for i, v := range c.cols {
 		w := make([]float64, rows)
-		n := copy(w, v)
-		for n < rows { // a column that a later header lacks stays blank
-			w[n] = missing(trend.Gap)
-			n++
-		}
+		copy(w, v)
 		c.cols[i] = w
 	}
 	ms := make([]int64, len(c.ms), rows)
@@ -238,6 +235,9 @@ func (c *csvReader) row(line []byte) bool {
 	for _, p := range c.pend {
 		c.accept(p)
 	}
+	for _, slot := range c.absent {
+		c.cols[slot][n] = missing(trend.Gap)
+	}
 	c.ms = append(c.ms, ms)
 	return true
 }
@@ -304,11 +304,10 @@ func (c *csvReader) newHeader(line []byte) bool {
 	}
 	c.header = cells
 	c.place(cells, timeAt, clockAt, find)
-	for slot, v := range c.cols { // what the new header lacks is blank from here on
+	c.absent = c.absent[:0]
+	for slot := range c.cols {
 		if !slices.Contains(c.slot, int32(slot)) {
-			for i := len(c.ms); i < len(v); i++ {
-				v[i] = missing(trend.Gap)
-			}
+			c.absent = append(c.absent, slot)
 		}
 	}
 	c.t.notes.add("header-changed", c.name, "", c.line, "another header begins here (%d columns); rows after it are read by it, and %d of the points wanted are not in it", len(cells), lost)

@@ -18,6 +18,7 @@ type longShape struct {
 	point, value            int // columns
 	status, unit, equipment int // -1: none
 	names                   []string
+	rows                    []int // by point, as counted in a first pass
 	index                   map[string]int32
 }
 
@@ -165,11 +166,19 @@ func newLongCells(sh *shape) longCells {
 // split parts a record; ok is false where it has too few cells, open where a quote
 // does not close.
 func (c *longCells) split(line []byte) (ok, open bool) {
-	i := 0
+	i, delim := 0, c.of.delim
 	for col := 0; ; col++ {
-		body, next := cellBytes(line, i, c.of.delim)
-		if next < 0 {
-			return false, true
+		var body []byte
+		next := i
+		if i < len(line) && (line[i] == '"' || line[i] == ' ') {
+			if body, next = cellBytes(line, i, delim); next < 0 {
+				return false, true
+			}
+		} else {
+			for next < len(line) && line[next] != delim {
+				next++
+			}
+			body = line[i:next]
 		}
 		c.cell[col] = body
 		if col == c.last {
@@ -253,11 +262,13 @@ func (s *longScanner) row(line []byte) bool {
 			i = int32(len(l.names))
 			l.names = append(l.names, string(key))
 			l.index[l.names[i]] = i
+			l.rows = append(l.rows, 0)
 			s.samples = append(s.samples, sample{twoState: true})
 			s.units = append(s.units, "")
 		}
 		s.last = i
 	}
+	l.rows[i]++
 	if sm := &s.samples[i]; sm.n < headRows {
 		sm.add(s.cell[l.value], s.sh.mark)
 		if l.unit >= 0 && s.units[i] == "" {
@@ -310,6 +321,8 @@ func readLong(ctx context.Context, r io.Reader, name string, sh *shape, wanted [
 	}
 	for s, w := range wanted {
 		c.slot[w.col] = int32(s)
+		n := sh.long.rows[w.col]
+		c.series[s] = series{make([]int64, 0, n), make([]float64, 0, n)}
 	}
 	if err := c.run(ctx, r, c); err != nil {
 		return nil, err

@@ -6,8 +6,10 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"time"
 
+	"github.com/apache/arrow/go/v17/arrow/memory"
 	"github.com/apache/arrow/go/v17/parquet"
 	"github.com/apache/arrow/go/v17/parquet/file"
 	"github.com/apache/arrow/go/v17/parquet/metadata"
@@ -64,6 +66,14 @@ func patience(f io.Seeker) time.Duration {
 	return 20*time.Second + time.Duration(size>>20)*time.Second
 }
 
+// openParquet reads the footer. Columns are then read through a small buffer: else the
+// library makes one as large as the footer says that the column is.
+func openParquet(f storedFile) (*file.Reader, error) {
+	props := parquet.NewReaderProperties(memory.DefaultAllocator)
+	props.BufferedStreamEnabled, props.BufferSize = true, 16<<10
+	return file.NewParquetReader(f, file.WithReadProps(props))
+}
+
 // readParquet reads the wanted columns of a file, or points of a long one, from row
 // groups that may hold times from from to to (ms UTC).
 func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShape, wanted []want, abbr map[string]int64, from, to int64) (*rawTable, error) {
@@ -71,7 +81,7 @@ func readParquet(ctx context.Context, f storedFile, name string, sh *parquetShap
 	err := within(ctx, patience(f), func(ctx context.Context) error {
 		what := "footer"
 		return guard(&what, func() error {
-			r, err := file.NewParquetReader(f)
+			r, err := openParquet(f)
 			if err != nil {
 				return fmt.Errorf("not a whole Parquet file: %w", err)
 			}
@@ -229,7 +239,7 @@ func (p *parquetReader) table(wanted []want) (*rawTable, error) {
 	for slot, w := range wanted {
 		part.slots = append(part.slots, slot)
 		p.bad, p.digits = badCell{}, w.quantity
-		v, err := p.column(w.col, make([]float64, 0, len(stamps)), p.values)
+		v, err := p.column(w.col, make([]float64, 0, len(stamps)+1), p.values)
 		if err != nil {
 			return nil, err
 		}
@@ -428,6 +438,16 @@ func sized[T any](b []T) []T {
 
 // values reads one batch as readings.
 func (p *parquetReader) values(cr file.ColumnChunkReader, dst []float64) ([]float64, int64, error) {
+	if r, ok := cr.(*file.Float64ColumnChunkReader); ok && cr.Descriptor().MaxDefinitionLevel() == 0 {
+		// Nearly every column: no nulls, and in the form in which it is kept. A NaN has
+		// the bits of a gap, and what is infinite is out of every range.
+		if len(dst) == cap(dst) {
+			dst = slices.Grow(dst, parquetBatch)
+		}
+		at := len(dst)
+		n, k, err := r.ReadBatch(int64(cap(dst)-at), dst[at:cap(dst)], nil, nil)
+		return dst[:at+k], n, err
+	}
 	return p.batch(cr, dst, finite, func(b parquet.ByteArray) float64 {
 		x := parseCell(b, '.')
 		if x.word && p.digits {

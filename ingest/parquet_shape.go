@@ -54,7 +54,7 @@ func sniffParquet(ctx context.Context, f storedFile, timeColumn string) (*parque
 	err := within(ctx, patience(f), func(ctx context.Context) error {
 		what := "footer"
 		return guard(&what, func() error {
-			r, err := file.NewParquetReader(f)
+			r, err := openParquet(f)
 			if err != nil {
 				return fmt.Errorf("not a whole Parquet file: %w", err)
 			}

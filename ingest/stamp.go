@@ -34,9 +34,14 @@ func (s *stampReader) turned() bool {
 
 // read reads one stamp.
 func (s *stampReader) read(b []byte) (int64, bool) {
+	if s.fastUsable && string(b) == string(s.text) { // several points at one time
+		return s.ms, true
+	}
 	if s.fastUsable && len(b) == len(s.text) && string(b[:s.from]) == string(s.text[:s.from]) && string(b[s.to:]) == string(s.text[s.to:]) {
 		if ofDay, ok := shortClock(b[s.from:s.to], s.twelve); ok {
-			return s.ms + ofDay - s.ofDay, true
+			copy(s.text[s.from:s.to], b[s.from:s.to])
+			s.ms, s.ofDay = s.ms+ofDay-s.ofDay, ofDay
+			return s.ms, true
 		}
 	}
 	c, ok := parseStamp(b, s.order)
