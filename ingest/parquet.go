@@ -7,6 +7,7 @@ import (
 	"io"
 	"math"
 	"slices"
+	"sync"
 	"time"
 
 	"github.com/apache/arrow/go/v17/arrow/memory"
@@ -114,6 +115,7 @@ type parquetReader struct {
 	abbr   map[string]int64
 	bad    badCell
 	digits bool // of the column at hand: words are no value of it
+	pool   *sync.Pool
 
 	stampIs stampKind
 
@@ -379,7 +381,7 @@ func (p *parquetReader) column(c int, dst []float64, get func(cr file.ColumnChun
 	for _, g := range p.groups {
 		*p.what = fmt.Sprintf("row group %d, column %s", g, quote(p.sh.header[c]))
 		rg := p.r.RowGroup(g)
-		cr, err := rg.Column(c)
+		cr, err := p.columnReader(rg, c)
 		if err != nil {
 			return nil, fmt.Errorf("%s: %w", *p.what, err)
 		}
