@@ -109,7 +109,7 @@ func (c *lineReader) run(ctx context.Context, r io.Reader, rows rowReader) error
 func (c *lineReader) runOn(b []byte, first int, eol byte, last bool, rows rowReader) (end, more int, hungry bool) {
 	end = first
 	for more = 1; more <= maxRunOn; more++ {
-		i := bytes.IndexByte(b[end+1:], eol)
+		i := bytes.IndexByte(b[min(end+1, len(b)):], eol)
 		switch {
 		case i >= 0:
 			end += 1 + i

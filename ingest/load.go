@@ -287,8 +287,8 @@ func (r *Result) axis(u *trend.Unit, files []loaded, notes *notebook) error {
 	midnight := time.Date(y, m, d, 0, 0, 0, 0, r.cfg.site.Zone)
 	start := midnight.Add(first.Sub(midnight).Truncate(step))
 	n := (hi+slack-start.UnixMilli())/step.Milliseconds() + 1
-	if n > maxIntervals {
-		return &UnitError{Unit: u.Name, Msg: fmt.Sprintf("its times run over %d intervals of %v", n, step), Hint: "check the years in the files, or give --from and --to"}
+	if n > maxIntervals || n > 1<<20 && n/1000 > int64(rows) {
+		return &UnitError{Unit: u.Name, Msg: fmt.Sprintf("its times run over %d intervals of %v, with %d rows in them", n, step, rows), Hint: "check the years in the files, or give --from and --to"}
 	}
 	u.Axis = trend.Axis{Start: start.UTC(), Step: step, N: int(n)}
 	return nil

@@ -342,6 +342,7 @@ func FuzzCSVFile(f *testing.F) {
 	f.Add([]byte("a,\"b\n\",c\n1,2,3\n"))
 	f.Add([]byte{0xff, 0xfe, 't', 0, ',', 0, 'x', 0, '\n', 0})
 	f.Add([]byte("time,sa_temp\n1e300,1\n-5,2\n99999999999999999999,3\n"))
+	addHabits(f, ".csv", ".tsv", ".txt")
 	f.Fuzz(func(t *testing.T, data []byte) { swallow(t, "f.csv", data) })
 }
 
@@ -353,7 +354,34 @@ func FuzzParquetFile(f *testing.F) {
 		}
 		f.Add(b)
 	}
+	addHabits(f, ".parquet")
 	f.Fuzz(func(t *testing.T, data []byte) { swallow(t, "f.parquet", data) })
+}
+
+func FuzzZipFile(f *testing.F) {
+	addHabits(f, ".zip")
+	f.Fuzz(func(t *testing.T, data []byte) { swallow(t, "f.zip", data) })
+}
+
+// addHabits adds the fixtures of a kind as seeds.
+func addHabits(f *testing.F, ends ...string) {
+	files, err := os.ReadDir(habits)
+	if err != nil {
+		f.Fatal(err)
+	}
+	for _, e := range files {
+		if !slices.Contains(ends, filepath.Ext(e.Name())) {
+			continue
+		}
+		b, err := os.ReadFile(habits + e.Name())
+		if err != nil {
+			f.Fatal(err)
+		}
+		f.Add(b[:min(len(b), 1500)])
+		if ends[0] != ".csv" {
+			f.Add(b)
+		}
+	}
 }
 
 func FuzzSiteTOML(f *testing.F) {
