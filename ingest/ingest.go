@@ -82,6 +82,8 @@ type Mapped struct {
 	Open    []trend.Role // roles that it could be, where that was left open
 	Line    int          // of points.csv
 	Shared  bool         // with other units
+
+	score int // how sure the name is
 }
 
 // source is a trend file whose head has been read.
@@ -152,7 +154,7 @@ func Read(ctx context.Context, o Options) (_ *Result, err error) {
 	if err := r.readConfig(o, in); err != nil {
 		return nil, err
 	}
-	points, err := r.readSchedule(o, in)
+	points, err := r.readSchedule(o, in, &notes)
 	if err != nil {
 		return nil, err
 	}
@@ -269,8 +271,10 @@ func (in *input) addFolder(ctx context.Context, dir string) error {
 		if in.trends == "" {
 			in.trends = shown
 		}
-		if _, ok := exists("points.csv"); ok {
-			in.site = dir
+		for _, name := range scheduleFiles() {
+			if _, ok := exists(name); ok {
+				in.site = dir
+			}
 		}
 	}
 	files, ignored, err := walk(ctx, root, shown)
@@ -285,7 +289,7 @@ func (in *input) addFolder(ctx context.Context, dir string) error {
 	}
 	for _, g := range ignored {
 		switch g {
-		case "site.toml", "truth.csv", "README.md":
+		case "site.toml", "truth.csv", "README.md", "points.ttl", "points.zinc", "points.json":
 		default:
 			in.ignored = append(in.ignored, path.Join(shown, g))
 		}
@@ -354,12 +358,32 @@ func (r *Result) readConfig(o Options, in *input) error {
 	return nil
 }
 
-func (r *Result) readSchedule(o Options, in *input) ([]*point, error) {
-	shown, text, err := configFile(o.PointsPath, in.site, "points.csv")
-	if err != nil || shown == "" {
-		return nil, err
+func (r *Result) readSchedule(o Options, in *input, notes *notebook) ([]*point, error) {
+	var shown string
+	var text []byte
+	for _, base := range scheduleFiles() {
+		s, t, err := configFile(o.PointsPath, in.site, base)
+		if err != nil {
+			return nil, err
+		}
+		switch {
+		case s == "":
+		case shown != "" && s != shown:
+			notes.add("schedule-second", s, "", 0, "%s is not read: %s stands beside it", quote(s), quote(shown))
+		default:
+			shown, text = s, t
+		}
 	}
-	points, err := readPoints(shown, text)
+	if shown == "" {
+		return nil, nil
+	}
+	read := func(file string, text []byte, _ *notebook) ([]*point, error) { return readPoints(file, text) }
+	for _, f := range modelFormats {
+		if strings.EqualFold(filepath.Ext(shown), "."+f.ext) {
+			read = readModel
+		}
+	}
+	points, err := read(shown, text, notes)
 	if err != nil {
 		return nil, err
 	}

@@ -113,6 +113,15 @@ func (r *Result) plan(points []*point, notes *notebook) error {
 	if len(points) > 0 && len(free) > 0 {
 		notes.addCount(len(free), "file-not-in-schedule", r.files[free[0]].ref.name, "", 0, "points.csv says nothing of the columns of %s; they are mapped by name", quote(r.files[free[0]].ref.name))
 	}
+	open := 0
+	for _, p := range points {
+		if p.open {
+			open++
+		}
+	}
+	if open > 0 {
+		notes.addCount(open, "point-open", r.PointsFile, "", 0, "rows of the points schedule have the role ?: they are not used")
+	}
 	more := r.group(free, unit)
 	shared = append(shared, more...)
 	for _, p := range points {
@@ -325,7 +334,7 @@ func (r *Result) describe(u *unitPlan, unused, loose []binding) UnitSource {
 	mapped := 0
 	for _, b := range all {
 		f := r.files[b.file]
-		m := Mapped{Column: f.header[b.col], File: f.ref.name, Role: b.role, By: b.by, Ground: b.ground, Open: b.open, Line: b.line, Shared: b.shared}
+		m := Mapped{Column: f.header[b.col], File: f.ref.name, Role: b.role, By: b.by, Ground: b.ground, Open: b.open, Line: b.line, Shared: b.shared, score: b.score}
 		if b.stated {
 			m.Measure = b.measure.Name
 		}

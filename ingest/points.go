@@ -24,10 +24,16 @@ type point struct {
 	offset  float64
 	band    trend.Band
 	note    string
+	open    bool // the role is not settled
+	lax     bool // file is where a model says the trend is stored: it need not be a file of ours
 	matches int
 }
 
-var pointColumns = []string{"unit", "file", "column", "role", "measure", "scale", "offset", "accuracy", "note"}
+// confidence and ground are a draft's own and are passed over.
+var pointColumns = []string{"unit", "file", "column", "role", "measure", "scale", "offset", "accuracy", "note", "confidence", "ground"}
+
+// openRole stands for a point whose role has not been settled: not used.
+const openRole = "?"
 
 // readPoints reads a points.csv, strictly. Comma, semicolon and tab are taken
 // for separators, as spreadsheets write them.
@@ -144,6 +150,9 @@ func readPoint(line int, cell func(string) string, fail func(line int, field, hi
 		}
 	}
 	r, known := trend.ParseRole(cell("role"))
+	if cell("role") == openRole {
+		p.open, known = true, true
+	}
 	if !known {
 		hint := didYouMean(cell("role"), trend.RoleNames())
 		if hint == "" {
@@ -199,6 +208,9 @@ func (p *point) covers(name, header, bare string) bool {
 		return false
 	}
 	if p.file == "" {
+		return true
+	}
+	if p.lax && !strings.HasSuffix(p.file, path.Ext(name)) { // a database, say
 		return true
 	}
 	if ok, _ := path.Match(p.file, name); ok {

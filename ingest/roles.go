@@ -356,10 +356,10 @@ func compound(w string) (trait, bool) {
 	return best[len(w)].t, true
 }
 
-// told words one reading: `"SAT" supply temperature`.
+// told words one reading: “SAT” supply temperature.
 func told(word string, t trait) string {
 	var b strings.Builder
-	fmt.Fprintf(&b, "%q", word)
+	fmt.Fprintf(&b, "“%s”", word)
 	for t != 0 {
 		i := bits.TrailingZeros64(uint64(t))
 		t &^= 1 << i

@@ -34,6 +34,7 @@ type command struct {
 func commands() []command {
 	return []command{
 		{"audit", "TREND...", "everything about one unit, or a few, in depth", audit},
+		{"points", "TREND...", "propose a points schedule from column names, units and the data", points},
 		{"rules", "[NAME]", "the catalogue: what each rule asks, needs, assumes, and its sources", listRules},
 		{"demo", "DIR", "write an invented site with known faults, and the truth beside it", demo},
 	}
