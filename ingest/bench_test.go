@@ -8,6 +8,7 @@ import (
 	"io"
 	"math"
 	"strconv"
+	"sync"
 	"testing"
 	"time"
 
@@ -352,5 +353,37 @@ func BenchmarkParquet(b *testing.B) {
 			t.Release()
 		}
 		b.ReportMetric(float64(rows)*float64(b.N)/b.Elapsed().Seconds()/1e6, "Mrows/s")
+	})
+}
+
+// Two files, one after the other and at once.
+func BenchmarkTwoFiles(b *testing.B) {
+	text := wideCSV(200_000, 24)
+	sh, err := sniffText(text[:headBytes], false, "")
+	if err != nil {
+		b.Fatal(err)
+	}
+	var wanted []want
+	for c := 1; c < 24; c++ {
+		wanted = append(wanted, want{col: c, status: -1})
+	}
+	read := func() {
+		if t, err := readCSV(context.Background(), bytes.NewReader(text), "x.csv", sh, wanted, 200_000, nil); err != nil || t.rows != 200_000 {
+			b.Error(err)
+		}
+	}
+	b.Run("one core", func(b *testing.B) {
+		for b.Loop() {
+			read()
+			read()
+		}
+	})
+	b.Run("two cores", func(b *testing.B) {
+		for b.Loop() {
+			var wg sync.WaitGroup
+			wg.Go(read)
+			wg.Go(read)
+			wg.Wait()
+		}
 	})
 }

@@ -65,19 +65,46 @@ func (c *rawColumn) set(u Measure, how string) {
 	c.measure, c.scale, c.shift, c.decided, c.how = u, scale, shift, true, how
 }
 
-// stats are the sample's extremes and median.
+// valueStats is what a column's values are like: extremes over all of them, the
+// median of a sample.
+type valueStats struct {
+	lo, mid, hi float64
+	n           int
+}
+
+// statsOf is how many values a median is taken of.
+const statsOf = 20_000
+
+// stats are the column's extremes, median and number of values, NaN and 0 where it has
+// none.
 func (c *rawColumn) stats() (lo, mid, hi float64, n int) {
-	v := make([]float64, 0, len(c.s.val))
+	if k := c.known; k != nil {
+		return k.lo, k.mid, k.hi, k.n
+	}
+	k := &valueStats{lo: math.NaN(), mid: math.NaN(), hi: math.NaN()}
+	c.known = k
+	stride := len(c.s.val)/statsOf + 1
+	v := make([]float64, 0, len(c.s.val)/stride+1)
 	for _, x := range c.s.val {
-		if x == x && !isSentinel(x) {
+		if x != x || isSentinel(x) {
+			continue
+		}
+		if k.n == 0 || x < k.lo {
+			k.lo = x
+		}
+		if k.n == 0 || x > k.hi {
+			k.hi = x
+		}
+		if k.n%stride == 0 {
 			v = append(v, x)
 		}
+		k.n++
 	}
-	if len(v) == 0 {
-		return math.NaN(), math.NaN(), math.NaN(), 0
+	if len(v) > 0 {
+		slices.Sort(v)
+		k.mid = v[len(v)/2]
 	}
-	slices.Sort(v)
-	return v[0], v[len(v)/2], v[len(v)-1], len(v)
+	return k.lo, k.mid, k.hi, k.n
 }
 
 // temperatureScale judges degC or degF for the unit's temperatures that do not

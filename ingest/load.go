@@ -187,6 +187,7 @@ func (r *Result) inUTC(tables []fileTable, notes *notebook) []loaded {
 			}
 			out = append(out, l)
 		}
+		t.parts = nil // memory: out alone holds the columns now
 		if unsorted > 0 {
 			notes.addCount(unsorted, "time-order", name, "", 0, "rows out of order of time were put in order")
 		}
@@ -243,11 +244,11 @@ func (s *source) read(ctx context.Context, wanted []want, abbr map[string]int64,
 	return t, src, nil
 }
 
-// rowsGuess sizes columns: about how many rows the file has, from its size and
-// the width of its rows, within reason.
+// rowsGuess sizes columns: about how many rows the file has, from its size and the
+// length of its first lines, within reason.
 func (s *source) rowsGuess() int {
-	width := 20 + 5*len(s.header)
-	return int(min(s.ref.size/int64(width), 1<<20)) + 16
+	n := s.ref.size / int64(max(s.text.width, 2))
+	return int(min(n+n/50, 1<<20)) + 16
 }
 
 // axis sets the unit's time axis: the step of the site, or the finest at which
@@ -333,13 +334,25 @@ func (r *Result) columns(u *trend.Unit, plan *unitPlan, files []loaded, notes *n
 		c.header = r.files[c.bind.file].header[c.bind.col]
 		c.file = r.files[c.bind.file].ref.name
 		raws = append(raws, c)
+		byRole[role] = nil
+	}
+	for i := range files { // memory: the samples of a point are let go as soon as it is aligned
+		files[i].cols = nil
 	}
 	decideMeasures(raws, r.cfg.site.Measure, notes)
+	var room scratch
 	for _, c := range raws {
-		if col := c.align(u.Axis, notes); col != nil {
+		if col := c.align(u.Axis, notes, &room); col != nil {
 			u.Cols[c.role] = col
 		}
+		c.s = series{}
 	}
+}
+
+// scratch is memory that one point's alignment leaves to the next.
+type scratch struct {
+	val []float64
+	ms  []int64
 }
 
 // rawColumn is one point's samples as logged.
@@ -356,10 +369,11 @@ type rawColumn struct {
 	scale   float64 // to the canonical unit, without the schedule's own
 	shift   float64
 	how     string // why this unit, where it was not stated
+	known   *valueStats
 }
 
 // align converts the samples and lays them on the axis.
-func (c *rawColumn) align(ax trend.Axis, notes *notebook) *trend.Column {
+func (c *rawColumn) align(ax trend.Axis, notes *notebook, room *scratch) *trend.Column {
 	if !c.decided {
 		return nil
 	}
@@ -368,8 +382,10 @@ func (c *rawColumn) align(ax trend.Axis, notes *notebook) *trend.Column {
 	// canonical = (raw*scale + offset) * unit + shift
 	scale, shift := b.scale*c.scale, b.offset*c.scale+c.shift
 	lo, hi := instrumentRange(k)
-	val := make([]float64, len(c.s.val))
-	ms := make([]int64, 0, len(val))
+	if cap(room.val) < len(c.s.val) {
+		room.val, room.ms = make([]float64, len(c.s.val)), make([]int64, 0, len(c.s.val))
+	}
+	val, ms := room.val[:len(c.s.val)], room.ms[:0]
 	n, out, sentinels := 0, 0, 0
 	var example float64
 	blanks := 0

@@ -33,6 +33,7 @@ type shape struct {
 	shortOK  bool       // rows leave out blank cells at their end
 	long     *longShape // of a narrow file, one row a reading; nil: a column a point
 	rows     [][]string // sample of data rows
+	width    int        // mean bytes of a line in the sample
 }
 
 // sniffText reads the shape of a delimited text from its first bytes. whole says
@@ -48,6 +49,7 @@ func sniffText(head []byte, whole bool, timeColumn string) (*shape, error) {
 		return nil, fmt.Errorf("holds binary data, not text")
 	}
 	var lines []string
+	size := len(head)
 	for len(head) > 0 && len(lines) < maxPreamble+headRows {
 		i := bytes.IndexByte(head, eol)
 		if i < 0 {
@@ -84,6 +86,7 @@ func sniffText(head []byte, whole bool, timeColumn string) (*shape, error) {
 		return nil, whyNoShape(lines)
 	}
 	best.crOnly = crOnly
+	best.width = max((size-len(head))/max(len(lines), 1), 1)
 	return best, nil
 }
 

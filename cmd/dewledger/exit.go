@@ -7,6 +7,7 @@ import (
 	"io"
 	"os"
 	"os/signal"
+	"runtime/debug"
 	"syscall"
 	_ "time/tzdata" // zones where the machine has none: one file runs anywhere
 
@@ -71,6 +72,11 @@ func complain(w io.Writer, msg, hint string) {
 }
 
 func main() {
+	if os.Getenv("GOGC") == "" {
+		// Columns are large and few: half the usual headroom is as fast, in a third less
+		// memory.
+		debug.SetGCPercent(50)
+	}
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	code := run(ctx, env{args: os.Args[1:], stdin: os.Stdin, stdout: os.Stdout, stderr: os.Stderr})
 	stop()

@@ -102,8 +102,8 @@ func byTags(tags []string, weather bool) (trend.Role, bool) {
 	}
 	if weather {
 		have["weather"] = true
-	} else if have["weather"] {
-		have["outside"] = true
+	} else if have["weather"] || have["outside"] { // of a unit's own sensor they say the same
+		have["outside"], have["weather"] = true, true
 	}
 	best := -1
 	for i, s := range standards {
