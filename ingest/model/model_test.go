@@ -15,18 +15,18 @@ const turtleSite = `@prefix brick: <https://brickschema.org/schema/Brick#> .
 PREFIX ref: <https://brickschema.org/schema/Brick/ref#>
 @prefix rdfs: <http://www.w3.org/2000/01/rdf-schema#> .
 @prefix unit: <http://qudt.org/vocab/unit/> .
-@base <urn:quay#> .
-@prefix q: <urn:quay#> .
+@base <http://quay.example/site> .
+@prefix q: <#> .
 
 # the unit, by two names of its class
 q:ahu7 a brick:Air_Handling_Unit , brick:Equipment ;
 	rdfs:label "AHU-7"@en ;
-	brick:hasPoint q:sat, <rat> ;
+	brick:hasPoint q:sat, <#rat> ;
 	brick:hasPart q:oad, [ a brick:Supply_Fan ; brick:hasPoint q:sf ] .
 q:sat a brick:Discharge_Air_Temperature_Sensor ; rdfs:label "ignored" ;
 	brick:hasUnit unit:DEG_F ;
 	ref:hasExternalReference [ a ref:TimeseriesReference ; ref:hasTimeseriesId "AHU7.DAT" ; ref:storedAt "trends.csv" ] .
-<rat> a brick:Return_Air_Temperature_Sensor ; rdfs:label """AHU7 "RAT\""""^^<http://www.w3.org/2001/XMLSchema#string> .
+<#rat> a brick:Return_Air_Temperature_Sensor ; rdfs:label """AHU7 "RAT\""""^^<http://www.w3.org/2001/XMLSchema#string> .
 q:oad a brick:Outside_Damper .
 q:oad.cmd a brick:Damper_Position_Command ; brick:isPointOf q:oad ; rdfs:label "AHU7.OAD" ; q:order ( 1 2.5 -3e2 true "x" ) ;
 .

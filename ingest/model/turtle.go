@@ -1,6 +1,7 @@
 package model
 
 import (
+	"net/url"
 	"strconv"
 	"strings"
 	"unicode"
@@ -28,8 +29,8 @@ const (
 	rdfNil   = "http://www.w3.org/1999/02/22-rdf-syntax-ns#nil"
 )
 
-// turtle reads RDF 1.1 Turtle (W3C Recommendation 25 February 2014). IRIs are taken
-// as they are: none is checked, and a relative one is put behind the base.
+// turtle reads RDF 1.1 Turtle (W3C Recommendation 25 February 2014). IRIs are not
+// checked.
 type turtle struct {
 	in       string
 	i, line  int
@@ -188,10 +189,24 @@ func (t *turtle) iri() (string, error) {
 	if strings.Contains(s, `\`) {
 		s = unescape(s)
 	}
-	if !strings.Contains(s, ":") {
-		s = t.base + s
+	return t.resolve(s), nil
+}
+
+// resolve puts a relative IRI behind the base (RFC 3986, section 5.2).
+func (t *turtle) resolve(iri string) string {
+	ref, err := url.Parse(iri)
+	if t.base == "" || err != nil || ref.IsAbs() {
+		return iri
 	}
-	return s, nil
+	base, err := url.Parse(t.base)
+	if err != nil || base.Opaque != "" {
+		return iri
+	}
+	out := base.ResolveReference(ref).String()
+	if strings.HasSuffix(iri, "#") && !strings.HasSuffix(out, "#") {
+		out += "#" // an empty fragment, on which a prefix builds
+	}
+	return out
 }
 
 func (t *turtle) subject() (term, error) {
