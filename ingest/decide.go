@@ -62,6 +62,17 @@ func (c *rawColumn) set(u Measure, how string) {
 	if !ok {
 		return
 	}
+	if k == trend.Position && u.Dim == Frequency {
+		full := 60.0
+		if _, _, hi, _ := c.stats(); hi*u.Scale <= 50.5 {
+			full = 50
+		}
+		scale = u.Scale / full
+		if how != "" {
+			how += "; "
+		}
+		how += fmt.Sprintf("full speed is taken for %.0f Hz", full)
+	}
 	c.measure, c.scale, c.shift, c.decided, c.how = u, scale, shift, true, how
 }
 

@@ -99,6 +99,8 @@ func (u *Measure) toKind(k trend.Kind) (scale, shift float64, ok bool) {
 	case u.Dim == DimensionOf(k):
 	case k == trend.Switch && u.Dim == Ratio:
 		return u.Scale, 0, true
+	case k == trend.Position && u.Dim == Frequency: // of a drive: a share of the mains' 60 Hz, or of 50 where it never goes beyond
+		return u.Scale / 60, 0, true
 	default:
 		return 0, 0, false
 	}

@@ -289,6 +289,12 @@ func readTokens(tokens []string) (t trait, unknown int, read []string) {
 			x, ok = compound(w)
 		}
 		if !ok {
+			if right := misspelt(w); right != "" {
+				x, ok = nameWords[right], true
+				read = append(read, "“"+w+"” for “"+right+"”")
+			}
+		}
+		if !ok {
 			unknown++
 			read = append(read, quote(w)+" not known")
 			continue
@@ -301,11 +307,37 @@ func readTokens(tokens []string) (t trait, unknown int, read []string) {
 	return t, unknown, read
 }
 
+// misspelt is the known word that w is one letter away from, where there is one such
+// word alone; short words are not taken for each other.
+func misspelt(w string) string {
+	const least = 6
+	if len(w) < least || len(w) > 20 {
+		return ""
+	}
+	found := ""
+	for known := range nameWords {
+		if d := len(known) - len(w); d > 1 || d < -1 || len(known) < least || known[0] != w[0] {
+			continue
+		}
+		if editDistance(w, known) == 1 {
+			if found != "" && nameWords[found] != nameWords[known] {
+				return ""
+			}
+			if found == "" || known < found {
+				found = known
+			}
+		}
+	}
+	return found
+}
+
 var pairs = map[string]trait{
 	"dew point": tDew, "dew pt": tDew, "wet bulb": tWetBulb, "dry bulb": tTemp, "set point": tSetpoint, "set pt": tSetpoint, "hot water": tHW, "chilled water": tCHW, "relative humidity": tRH, "rel hum": tRH,
 	"humidity ratio": tMoisture, "mixing ratio": tMoisture, "absolute humidity": tMoisture, "specific humidity": tMoisture, "static pressure": tPressure, "static press": tPressure, "stat press": tPressure, "st pr": tPressure, "static pr": tPressure,
 	"start stop": tCommand, "on off": tStatus, "air neuf": tOA, "air soufflé": tSupply, "air souffle": tSupply, "point de": tSensor, "chilled wtr": tCHW, "hot wtr": tHW, "heat recovery": tRecovery, "heat wheel": tRecovery, "enthalpy wheel": tRecovery, "energy wheel": tRecovery, "energy recovery": tRecovery,
 	"off coil": tCoil | tLeaving, "pre heat": tPre, "pre htg": tPre, "batterie chaude": tHeat | tCoil, "batterie froide": tCool | tCoil, "air flow": tFlow | tAir, "carbon dioxide": tCO2, "co 2": tCO2, "feed back": tFeedback, "make up": tOA, "fresh air": tOA, "air handler": tUnit, "s s": tCommand, "batería de": tCoil, "re heat": tBlock, "rueck meldung": tFeedback, "delta p": tDP, "diff press": tDP, "diff pressure": tDP, "differential pressure": tDP,
+	"o a": tOA, "r a": tReturn, "s a": tSupply, "m a": tMixed, "e a": tExhaust, "out air": tOA, "occ mode": tOccupied, "occupied mode": tOccupied, "occupancy mode": tOccupied, "occ unocc": tOccupied,
+	"kw vl": tCHW | tSupply, "kw rl": tCHW | tReturn, "ww vl": tHW | tSupply, "ww rl": tHW | tReturn, "hw vl": tHW | tSupply, "hw rl": tHW | tReturn, "klappe rm": tDamper | tFeedback, "ventil rm": tValve | tFeedback, "agua fría": tCHW, "agua fria": tCHW, "agua caliente": tHW, "agua helada": tCHW, "point de rosée": tDew, "punto de rocío": tDew,
 	"supply fan": tSupply | tFan, "return fan": tReturn | tFan, "exhaust fan": tExhaust | tFan, "aire exterior": tOA, "eau chaude": tHW, "eau glacée": tCHW, "eau glacee": tCHW, "warm wasser": tHW,
 }
 
