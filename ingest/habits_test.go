@@ -228,6 +228,23 @@ func TestHabitsOfClocks(t *testing.T) {
 	if _, _, err := load(t, Options{Paths: []string{habits + "time-ambiguous.csv"}}); err == nil || !strings.Contains(Hint(err), "day_first") {
 		t.Errorf("ambiguous dates: %v (%s)", err, Hint(err))
 	}
+	// An encoding that is not read is an error, not an empty column.
+	if _, _, err := load(t, Options{Paths: []string{habits + "byte-stream-split.parquet"}}); err == nil || !strings.Contains(err.Error(), "BYTE_STREAM_SPLIT") && !strings.Contains(err.Error(), "rows could be read") {
+		t.Errorf("byte stream split: %v", err)
+	}
+	// Row groups outside --from and --to are not read.
+	r, err := Read(t.Context(), Options{Paths: []string{habits + "snappy.parquet"}, From: "2026-05-21T15:00:00Z", To: "2026-05-21T16:00:00Z"})
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer r.Close()
+	u, src, err := r.Load(t.Context(), 0)
+	if err != nil || u.Axis.N != 12 || src[0].Rows != 20 || u.Axis.Step != 5*time.Minute {
+		t.Errorf("two row groups of three are outside the period: %d rows read, axis %+v, %v", src[0].Rows, u.Axis, err)
+	}
+	if _, _, err := load(t, Options{Paths: []string{habits + "snappy.parquet"}, From: "2027-01-01"}); err == nil || !strings.Contains(err.Error(), "no data between --from and --to") {
+		t.Errorf("all row groups are outside the period: %v", err)
+	}
 	// Without a header the columns have no names: nothing is guessed.
 	if _, _, err := load(t, Options{Paths: []string{habits + "no-header.csv"}}); err == nil || !strings.Contains(err.Error(), "no column could be told") {
 		t.Errorf("no header: %v", err)

@@ -83,7 +83,8 @@ type Mapped struct {
 	Line    int          // of points.csv
 	Shared  bool         // with other units
 
-	score int // how sure the name is
+	score int  // how sure the name is
+	other bool // another kind of point
 }
 
 // source is a trend file whose head has been read.

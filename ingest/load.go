@@ -77,7 +77,11 @@ func (r *Result) Load(ctx context.Context, i int) (*trend.Unit, []Source, error)
 	}
 	files := r.inUTC(tables, &notes)
 	if len(files) == 0 {
-		if failed == nil {
+		switch {
+		case failed != nil:
+		case slices.ContainsFunc(tables, func(t fileTable) bool { return t.pruned }):
+			failed = errPeriod(us.Name)
+		default:
 			failed = &UnitError{Unit: us.Name, Msg: "it has no data", Hint: "check the trend files"}
 		}
 		return nil, sources, failed
@@ -96,6 +100,10 @@ func (r *Result) Load(ctx context.Context, i int) (*trend.Unit, []Source, error)
 	sortNotes(notes.list)
 	u.Notes = notes.list
 	return u, sources, nil
+}
+
+func errPeriod(unit string) error {
+	return &UnitError{Unit: unit, Msg: "it has no data between --from and --to", Hint: "widen the period; the notes name the files"}
 }
 
 // readFile reads the columns of one file that the plan asks for; nil where it asks
@@ -270,7 +278,7 @@ func (r *Result) axis(u *trend.Unit, files []loaded, notes *notebook) error {
 		lo, hi = min(lo, f.ms[0]), max(hi, f.ms[len(f.ms)-1])
 	}
 	if rows == 0 {
-		return &UnitError{Unit: u.Name, Msg: "it has no data between --from and --to", Hint: "widen the period; the notes name the files"}
+		return errPeriod(u.Name)
 	}
 	if step == 0 {
 		step = 5 * time.Minute

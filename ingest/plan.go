@@ -28,6 +28,7 @@ type binding struct {
 	score   int
 	pos     bool
 	shared  bool
+	other   bool // another kind of point
 	open    []trend.Role
 }
 
@@ -136,7 +137,7 @@ func (r *Result) plan(points []*point, notes *notebook) error {
 func (r *Result) scheduled(file, col int, p *point) binding {
 	f := r.files[file]
 	b := binding{file: file, col: col, role: p.role, measure: p.measure, stated: p.stated, scale: p.scale, offset: p.offset, band: p.band,
-		by: "schedule", ground: fmt.Sprintf("%s:%d", r.PointsFile, p.line), note: p.note, line: p.line, score: 2 * exactScore}
+		by: "schedule", ground: fmt.Sprintf("%s:%d", r.PointsFile, p.line), note: p.note, line: p.line, score: 2 * exactScore, other: p.role == trend.NoRole && !p.open}
 	if !b.stated && b.role != trend.NoRole {
 		r.labelled(&b, f)
 	}
@@ -183,7 +184,7 @@ func (r *Result) guessColumn(file, col int, name string, wx bool) binding {
 			g.role = trend.WXDewPoint
 		}
 	}
-	b := binding{file: file, col: col, role: g.role, scale: 1, by: "guess", ground: g.ground, score: g.score, pos: g.pos, open: g.open, shared: wx}
+	b := binding{file: file, col: col, role: g.role, scale: 1, by: "guess", ground: g.ground, score: g.score, pos: g.pos, other: g.other, open: g.open, shared: wx}
 	if b.role != trend.NoRole {
 		r.labelled(&b, f)
 	}
@@ -334,7 +335,7 @@ func (r *Result) describe(u *unitPlan, unused, loose []binding) UnitSource {
 	mapped := 0
 	for _, b := range all {
 		f := r.files[b.file]
-		m := Mapped{Column: f.header[b.col], File: f.ref.name, Role: b.role, By: b.by, Ground: b.ground, Open: b.open, Line: b.line, Shared: b.shared, score: b.score}
+		m := Mapped{Column: f.header[b.col], File: f.ref.name, Role: b.role, By: b.by, Ground: b.ground, Open: b.open, Line: b.line, Shared: b.shared, score: b.score, other: b.other}
 		if b.stated {
 			m.Measure = b.measure.Name
 		}

@@ -64,7 +64,7 @@ func (r *Result) Propose(ctx context.Context) ([]Proposal, error) {
 				p.Confidence = 1
 			case m.Role != trend.NoRole:
 				p.Confidence = nameConfidence(m.score, m.Measure != "")
-			case len(m.Open) == 0:
+			case m.other:
 				p.Known = true
 			}
 			if m.Role != trend.NoRole && u != nil {
@@ -435,7 +435,9 @@ func WriteSchedule(w io.Writer, rows []Proposal) error {
 			for _, r := range p.Open {
 				could = append(could, r.String())
 			}
-			note = "could be " + strings.Join(could, ", ")
+			if len(could) > 0 {
+				note = "could be " + strings.Join(could, ", ")
+			}
 		}
 		if err := c.Write([]string{p.Unit, p.File, p.Column, role, p.Measure, "", "", "", note, confidence, p.Ground}); err != nil {
 			return err

@@ -15,6 +15,7 @@ type guess struct {
 	score  int    // higher is surer; 0: none
 	ground string // in words, also where there is no role
 	open   []trend.Role
+	other  bool // the name says that it is another kind of point
 	pos    bool // the name says "position": command or feedback, as the others decide
 }
 
@@ -46,7 +47,7 @@ func guessRole(name, unit string, sm sample) guess {
 	u, known := LookupUnit(unit)
 	traits = disambiguate(traits, u, known, sm)
 	if traits&tBlock != 0 {
-		return guess{ground: "the name speaks of " + strings.Join(read, ", ")}
+		return guess{other: true, ground: "the name speaks of " + strings.Join(read, ", ")}
 	}
 	if traits&(tTemp|tRH|tDew|tWetBulb|tEnthalpy|tMoisture|tFlow|tVelocity|tPressure|tDP|tCO2|tDamper|tValve|tFan|tStage|tHumidifier|tEcon|tRecovery|tOccupied|tBaro) == 0 {
 		if known {

@@ -359,6 +359,7 @@ func main() {
 	write("delta.parquet", columns(parquet.WithDictionaryDefault(false), parquet.WithEncodingFor("time", parquet.Encodings.DeltaBinaryPacked)))
 	write("pages-v2.parquet", columns(parquet.WithDataPageVersion(parquet.DataPageV2)))
 	write("long.parquet", narrow())
+	write("byte-stream-split.parquet", byteStreamSplit())
 }
 
 func must[T any](v T, err error) T {
@@ -419,6 +420,21 @@ func columns(opts ...parquet.WriterProperty) string {
 		log.Fatal(err)
 	}
 	return out.String()
+}
+
+// byteStreamSplit is a file whose values say that they are in an encoding that the
+// library does not read: the encoding's number in the page headers is changed from 0,
+// plain, to 9.
+func byteStreamSplit() string {
+	plain := columns(parquet.WithCompression(compress.Codecs.Uncompressed), parquet.WithDictionaryDefault(false))
+	// A data page's header: 20 values, encoding 0, levels in encoding 3 (zigzag).
+	from := "\x2c\x15\x28\x15\x00\x15\x06\x15\x06"
+	to := "\x2c\x15\x28\x15\x12\x15\x06\x15\x06"
+	first := strings.Index(plain, from) + len(from) // the times stay as they are
+	if n := strings.Count(plain[first:], from); n < 5 {
+		log.Fatalf("%d pages", n)
+	}
+	return plain[:first] + strings.ReplaceAll(plain[first:], from, to)
 }
 
 // narrow writes the record as a Parquet file with one row a reading.
