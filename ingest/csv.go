@@ -148,13 +148,14 @@ func (c *csvReader) row(line []byte) bool {
 	c.pend = c.pend[:0]
 	var stamp, clock []byte
 	col, i, ended := 0, 0, false
-	for ; col <= c.last; col++ {
+	slots, cols := c.slot[:c.last+1], c.cols
+	for ; col < len(slots); col++ {
 		start := i
-		if slot := c.slot[col]; slot >= 0 {
+		if slot := slots[col]; slot >= 0 {
 			// The shape of nearly every cell, read where it stands.
-			v, next, ok := cellNumber(line, i, delim, mark)
-			if ok {
-				c.cols[slot][n] = v
+			v, next := cellNumber(line, i, delim, mark)
+			if next >= 0 {
+				cols[slot][n] = v
 				i = next
 			} else {
 				var body []byte
@@ -379,8 +380,8 @@ func (c *csvReader) accept(p pending) {
 }
 
 // cellNumber reads a plain number from line[i:] up to the delimiter or the end
-// of the line.
-func cellNumber(line []byte, i int, delim, mark byte) (v float64, next int, ok bool) {
+// of the line; next is negative where it is something else.
+func cellNumber(line []byte, i int, delim, mark byte) (v float64, next int) {
 	neg := false
 	if i < len(line) && line[i] == '-' {
 		neg = true
@@ -396,8 +397,12 @@ func cellNumber(line []byte, i int, delim, mark byte) (v float64, next int, ok b
 		m = m*10 + uint64(d)
 		i++
 	}
-	digits, frac := i-start, 0
-	if i < len(line) && line[i] == mark && mark != delim {
+	digits := i - start
+	v = float64(m)
+	if i < len(line) && line[i] != delim {
+		if line[i] != mark {
+			return 0, -1
+		}
 		i++
 		start = i
 		for i < len(line) {
@@ -408,20 +413,19 @@ func cellNumber(line []byte, i int, delim, mark byte) (v float64, next int, ok b
 			m = m*10 + uint64(d)
 			i++
 		}
-		frac = i - start
-		digits += frac
+		if i < len(line) && line[i] != delim {
+			return 0, -1
+		}
+		digits += i - start
+		v = float64(m) / pow10[(i-start)&15]
 	}
-	if (i < len(line) && line[i] != delim) || digits == 0 || digits > 15 {
-		return 0, 0, false
-	}
-	v = float64(m)
-	if frac > 0 {
-		v /= pow10[frac]
+	if digits == 0 || digits > 15 {
+		return 0, -1
 	}
 	if neg {
 		v = -v
 	}
-	return v, i, true
+	return v, i
 }
 
 // cellBytes is the content of the cell at line[i:], without its quotes, and the

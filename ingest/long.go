@@ -152,15 +152,16 @@ func namesRows(sh *shape, c int) bool {
 
 // longCells is the cells of a row of a long file that matter.
 type longCells struct {
-	of   *shape
-	last int
-	cell [][]byte // by column
+	of    *shape
+	last  int
+	cell  [][]byte // by column
+	guess [][]byte // by column: what this row probably holds, as the stamp of the row before
 }
 
 func newLongCells(sh *shape) longCells {
 	l := sh.long
 	last := max(sh.timeCol, sh.clockCol, l.point, l.value, l.status, l.unit, l.equipment)
-	return longCells{of: sh, last: last, cell: make([][]byte, last+1)}
+	return longCells{of: sh, last: last, cell: make([][]byte, last+1), guess: make([][]byte, last+1)}
 }
 
 // split parts a record; ok is false where it has too few cells, open where a quote
@@ -175,8 +176,13 @@ func (c *longCells) split(line []byte) (ok, open bool) {
 				return false, true
 			}
 		} else {
-			for next < len(line) && line[next] != delim {
-				next++
+			// A guess that holds spares the search for the cell's end.
+			if g := c.guess[col]; len(g) > 0 && i+len(g) < len(line) && line[i+len(g)] == delim && string(line[i:i+len(g)]) == string(g) {
+				next = i + len(g)
+			} else {
+				for next < len(line) && line[next] != delim {
+					next++
+				}
 			}
 			body = line[i:next]
 		}
@@ -363,6 +369,9 @@ func (c *longReader) row(line []byte) bool {
 		return true
 	}
 	l := c.sh.long
+	if at := c.sh.timeCol; string(c.guess[at]) != string(c.cell[at]) {
+		c.guess[at] = append(c.guess[at][:0], c.cell[at]...)
+	}
 	key := c.key(c.buf)
 	if l.equipment >= 0 {
 		c.buf = key
@@ -389,6 +398,9 @@ func (c *longReader) row(line []byte) bool {
 		}
 	}
 	c.prev = i
+	if n := c.next[i]; n >= 0 && l.equipment < 0 {
+		c.guess[l.point] = append(c.guess[l.point][:0], l.names[n]...)
+	}
 	slot := c.slot[i]
 	if slot < 0 {
 		return true
@@ -408,8 +420,8 @@ func (c *longReader) row(line []byte) bool {
 		}
 	}
 	body := c.cell[l.value]
-	v, end, plain := cellNumber(body, 0, 0, c.sh.mark)
-	if !plain || end != len(body) {
+	v, end := cellNumber(body, 0, 0, c.sh.mark)
+	if end != len(body) {
 		v = c.slow(int(slot), body)
 	}
 	if l.status >= 0 {
