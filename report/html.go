@@ -69,6 +69,7 @@ type unitPage struct {
 	BooksEnergy        string
 	Psychro            *chart
 	States             []stateRow
+	Sensors            *sensorsView
 	Fraction           *chart
 	Tests              []testRow
 	OneMore            []oneMore
@@ -178,6 +179,7 @@ func viewOf(r UnitReport) unitPage {
 		v.Fraction = &c
 	}
 	v.States = statesOf(r.Books)
+	v.Sensors = sensorsOf(r.Books, s.Factor, m)
 	for _, c := range s.Coverage {
 		v.Tests = append(v.Tests, testOf(s, c, m))
 	}

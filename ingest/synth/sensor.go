@@ -165,6 +165,7 @@ func (q *sensors) begin(s *sim) {
 		case Normal:
 			x.offset = x.grade.band / math.Sqrt(3) * draw.NormFloat64()
 		}
+		s.run.Offsets[r] = x.offset
 		if model.Lag && x.grade.lag > 0 {
 			x.follow = 1 - math.Exp(-s.dt/x.grade.lag.Seconds())
 		}

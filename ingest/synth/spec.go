@@ -43,6 +43,8 @@ type Run struct {
 	Axis trend.Axis
 	True *Truth
 	Read [trend.NumRoles]*trend.Column // what the sensors of the trended points read
+
+	Offsets [trend.NumRoles]float64 // of the sensors, in the role's canonical unit; of a relative one a share of the reading
 }
 
 // Truth is what really happens, a value an interval. Stations that the train

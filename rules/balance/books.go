@@ -57,6 +57,7 @@ type Books struct {
 	gains      memo[[]*Part]
 	fanParts   memo[[]*Part]
 	coilParts  memo[[]*Part]
+	reconciled memo[*Reconciliation]
 	scratch    []float64
 	free       [][]float64 // buffers that nothing refers to
 }
