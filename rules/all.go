@@ -9,6 +9,7 @@ func All() []*Rule {
 		rhImpossible,
 		rhPinned,
 		readingFrozen,
+		sensorOffset,
 
 		mixedTempOutsideStreams,
 		oaDamperStuck,

@@ -286,6 +286,10 @@ func (p *Pass) Reading(r trend.Role) *balance.Series {
 	return p.b.Reading(r)
 }
 
+// Reconcile closes all balances of the period at once. It reads whatever the unit has:
+// a rule's needs name the least of it.
+func (p *Pass) Reconcile() *balance.Reconciliation { p.state(); return p.b.Reconcile() }
+
 func (p *Pass) command(c trend.Component) {
 	if !slices.Contains(p.rule.commands(p.b), c) {
 		panic(fmt.Sprintf("rules: %s reads undeclared command of %s", p.rule.Name, c))

@@ -46,6 +46,31 @@ type Reconciliation struct {
 	P         float64 // chance of a larger Chi2 without a gross error
 	Suspects  []Suspect
 	Remaining float64 // P once the suspects are freed
+
+	limit float64 // of the measurement tests
+}
+
+// Unbound is the offset by the data alone, without the sensor's own prior.
+func (o Offset) Unbound() (val, u float64) { return o.Val / o.Share, o.U / math.Sqrt(o.Share) }
+
+// Sees is the offset of this sensor alone that would have been called a suspect in 95 %
+// of such periods.
+func (r *Reconciliation) Sees(o Offset) float64 {
+	return (r.limit + quantile95) * o.Prior / math.Sqrt(o.Share)
+}
+
+// quantile95 is the standard normal's 95th percentile.
+const quantile95 = 1.6449
+
+// Accused is the sensor's suspicion where nothing else would explain as much and the
+// balances close once it is freed; else nil.
+func (r *Reconciliation) Accused(role trend.Role) *Suspect {
+	for k := range r.Suspects {
+		if s := &r.Suspects[k]; s.Role == role && role != trend.NoRole && len(s.Alternates) == 0 && r.Remaining >= leastClosed {
+			return s
+		}
+	}
+	return nil
 }
 
 // Offset is one sensor's estimated offset, in the role's canonical unit: a reading is
@@ -94,6 +119,7 @@ const (
 	familyLevel = 0.01
 	freed       = 1e4 // variance of z for a sensor freed of its prior
 	mostFreed   = 3
+	leastClosed = 1e-4 // chance under which what remains is said not to close
 	huberAt     = 1.5
 	plausible   = 5    // bands: a sensor that must be out by more is named after a part that would explain as much
 	asGood      = 3.84 // chi-square with one degree of freedom at 95 %: a difference in fit that does not tell two culprits apart
@@ -260,17 +286,33 @@ func (r *rows) column(role trend.Role, name string) int {
 		}
 	}
 	r.unknowns = append(r.unknowns, parameter{role: role, name: name})
-	for i := range r.a {
-		r.a[i] = append(r.a[i], 0)
-	}
 	return len(r.unknowns) - 1
 }
+
+// unevenMixing is how far a mixing box is from even, as an assumption: see unevenness.
+const unevenMixing = "how evenly the mixing box mixes at the sensor"
 
 // gather averages every equation over blocks of time.
 func (b *Books) gather(eqs []equation) *rows {
 	out := &rows{}
 	length := b.u.Axis.Intervals(blockTime)
 	uneven := b.unevenness()
+	// First who is in it, so that all rows are of one length.
+	for _, e := range eqs {
+		for _, s := range e.f.sens {
+			out.column(s.role, "")
+			if s.role == trend.MATemp && uneven != nil {
+				out.column(trend.NoRole, unevenMixing)
+			}
+		}
+		for _, x := range e.bias {
+			out.unknowns[out.column(trend.NoRole, x.name)].is = x
+		}
+	}
+	m := len(out.unknowns)
+	blocks := len(eqs) * (b.n()/length + 1)
+	room := make([]float64, 0, blocks*m)
+	out.a, out.r, out.eq, out.noise = make([][]float64, 0, blocks), make([]float64, 0, blocks), make([]int, 0, blocks), make([]float64, 0, blocks)
 	for _, e := range eqs {
 		cols := make([]int, len(e.f.sens))
 		offset := make([][]float64, len(e.f.sens))
@@ -279,22 +321,26 @@ func (b *Books) gather(eqs []equation) *rows {
 			cols[k] = out.column(s.role, "")
 			offset[k] = b.constantOffset(s.role)
 			if s.role == trend.MATemp && uneven != nil {
-				mixed = out.column(trend.NoRole, "stratification")
+				mixed = out.column(trend.NoRole, unevenMixing)
 			}
 		}
 		biases := make([]int, len(e.bias))
 		for k, x := range e.bias {
 			biases[k] = out.column(trend.NoRole, x.name)
-			out.unknowns[biases[k]].is = x
+		}
+		keep := e.keep
+		for _, s := range e.f.sens {
+			keep = b.withoutStandstill(keep, s.role)
 		}
 		from, hours := len(out.r), 0.0
 		least := max(1, length/4)
 		for i := 0; i < b.n(); i += length {
 			n, sum, nz := 0, 0.0, 0.0
-			row := make([]float64, len(out.unknowns))
+			row := room[len(room) : len(room)+m : len(room)+m]
+			clear(row)
 			for j := i; j < min(i+length, b.n()); j++ {
 				v := e.f.val[j]
-				if !e.keep[j] || v != v {
+				if !keep[j] || v != v {
 					continue
 				}
 				n++
@@ -321,6 +367,7 @@ func (b *Books) gather(eqs []equation) *rows {
 			if n < least {
 				continue
 			}
+			room = room[:len(room)+m]
 			for k := range row {
 				row[k] /= float64(n)
 			}
@@ -378,6 +425,34 @@ func (b *Books) constantOffset(r trend.Role) []float64 {
 		return filled(b.n(), w.HalfWidth/sqrt3)
 	}
 	return b.OffsetU(r)
+}
+
+// standstill is for how long a reading may repeat one value before it is taken for
+// stuck, which is no constant offset (common practice, no source).
+const standstill = 12 * time.Hour
+
+// withoutStandstill is keep without the intervals in which the reading is stuck; keep
+// itself where it never is.
+func (b *Books) withoutStandstill(keep []bool, r trend.Role) []bool {
+	v := b.u.Col(r)
+	least := b.u.Axis.Intervals(standstill)
+	out := keep
+	for i := 0; i < len(v); {
+		j := i + 1
+		for j < len(v) && v[j] == v[i] {
+			j++
+		}
+		if j-i >= least && v[i] == v[i] {
+			if &out[0] == &keep[0] {
+				out = slices.Clone(keep)
+			}
+			for k := i; k < j; k++ {
+				out[k] = false
+			}
+		}
+		i = j
+	}
+	return out
 }
 
 // unevenness is one standard uncertainty of what a mixed-air element sees too much of
@@ -541,7 +616,7 @@ func (b *Books) reconcile() *Reconciliation {
 		}
 	}
 	limit := sidak(familyLevel, max(tested, 1))
-	out.Remaining = out.P
+	out.Remaining, out.limit = out.P, limit
 	for range mostFreed {
 		worst, same := rs.worst(f, prior, limit)
 		if worst < 0 {
@@ -653,7 +728,7 @@ func (f fit) test(k int, prior []float64) float64 {
 func (r *rows) offsets(f fit, prior []float64) []Offset {
 	var out []Offset
 	for k, x := range r.unknowns {
-		if x.role == trend.NoRole {
+		if x.role == trend.NoRole || len(x.in) == 0 {
 			continue
 		}
 		c := f.cov.At(k, k)
