@@ -32,14 +32,18 @@ func newTally(b *balance.Books) *tally {
 	return t
 }
 
+// unpriced is no figure at all.
+func unpriced() finding.Energy {
+	return finding.Energy{KWh: nan(), Low: nan(), High: nan(), Heat: nan(), Cooling: nan(), Electricity: nan(), Cost: nan(), CostLow: nan(), CostHigh: nan()}
+}
+
 // add integrates a ruling's waste over its flagged intervals. The low and high
 // come from the effect's expanded uncertainty and the flow's, in quadrature.
 // Where some flagged intervals could not be priced the figure is scaled by
 // their share, and Note says so.
 func (t *tally) add(p *Pass, r *ruling) finding.Energy {
-	none := finding.Energy{KWh: nan(), Low: nan(), High: nan(), Heat: nan(), Cooling: nan(), Electricity: nan(), Cost: nan(), CostLow: nan(), CostHigh: nan()}
 	if r.e.Waste == nil {
-		return none
+		return unpriced()
 	}
 	shift := p.factor * r.u
 	var mid, lo, hi Rate
@@ -67,7 +71,7 @@ func (t *tally) add(p *Pass, r *ruling) finding.Energy {
 		t.motor[pot][i] = math.Max(t.motor[pot][i], m.Motor)
 	}
 	if priced == 0 {
-		return none
+		return unpriced()
 	}
 	t.any = true
 	scale := t.hours * float64(r.nflagged) / float64(priced)

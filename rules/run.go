@@ -32,6 +32,11 @@ func Run(ctx context.Context, b *balance.Books, opt Options) finding.Set {
 	} else {
 		set.FanHours = math.NaN()
 	}
+	var fixed *balance.Books
+	var accused []trend.Role
+	if off := u.Plant.Rules[sensorOffset.Name].Disabled; !off && (len(opt.Only) == 0 || slices.Contains(opt.Only, sensorOffset.Name)) {
+		fixed, accused = corrected(b, newPass(sensorOffset, b, opt))
+	}
 	tally := newTally(b)
 	usable := make([]bool, u.Axis.N)
 	opens := map[trend.Role][]string{}
@@ -56,7 +61,12 @@ func Run(ctx context.Context, b *balance.Books, opt Options) finding.Set {
 			for i, a := range rulings[k].e.Applies {
 				usable[i] = usable[i] || len(r.Needs.Balances) > 0 && a && !math.IsNaN(rulings[k].e.Effect.Val[i])
 			}
-			if rulings[k].verdict == finding.Fault {
+			if rulings[k].verdict != finding.Fault {
+				continue
+			}
+			if by := explained(p, &rulings[k], fixed, accused, opt); by != trend.NoRole {
+				set.Findings = append(set.Findings, explainedBy(describe(p, &rulings[k], opt, nil), by))
+			} else {
 				set.Findings = append(set.Findings, describe(p, &rulings[k], opt, tally))
 			}
 		}
@@ -312,7 +322,7 @@ func commandRole(c trend.Component) trend.Role {
 	return trend.SAFanStatus
 }
 
-// describe makes a finding of a ruling.
+// describe makes a finding of a ruling. Without a tally it has no price.
 func describe(p *Pass, r *ruling, opt Options, t *tally) finding.Finding {
 	u, e, rule := p.b.Unit(), r.e, p.rule
 	ax := u.Axis
@@ -334,11 +344,13 @@ func describe(p *Pass, r *ruling, opt Options, t *tally) finding.Finding {
 	if len(rule.Checks) > 0 {
 		f.Check = rule.Checks[0]
 	}
-	f.Energy = t.add(p, r)
 	flaggedDays, testedDays := days(p, r)
 	energyShare := 0.0
-	if all := t.unitEnergy(p.b); all > 0 {
-		energyShare = nz(f.Energy.KWh) / all
+	if f.Energy = unpriced(); t != nil {
+		f.Energy = t.add(p, r)
+		if all := t.unitEnergy(p.b); all > 0 {
+			energyShare = nz(f.Energy.KWh) / all
+		}
 	}
 	f.Priority = priority(rule.Harm, &f, float64(flaggedDays)/math.Max(1, float64(testedDays)), energyShare)
 	if e.Elsewhere && f.Priority > finding.Low {
