@@ -156,7 +156,7 @@ func viewOf(r UnitReport) unitPage {
 		for _, c := range f.Cautions {
 			cautions[c] = true
 		}
-		if len(v.Firsts) < 3 && !slices.ContainsFunc(v.Firsts, func(x firstThing) bool { return x.Check == f.Check }) {
+		if len(v.Firsts) < 3 && f.ExplainedBy == "" && !slices.ContainsFunc(v.Firsts, func(x firstThing) bool { return x.Check == f.Check }) {
 			v.Firsts = append(v.Firsts, firstThing{f.Check, titleOf(s, f.Rule), anchorOf(i)})
 		}
 	}
@@ -248,13 +248,16 @@ func leadOf(s *finding.Set, m finding.Measure) []string {
 		}
 	}
 	var out []string
-	switch n := len(s.Findings); n {
+	switch n := s.Open(); n {
 	case 0:
 		out = append(out, "Nothing was found wrong with this unit in what this period could show.")
 	default:
 		f := &s.Findings[0]
 		out = append(out, fmt.Sprintf("%s %s to be looked at. The first: %s, by %s (priority %s, confidence %s).", capital(inWords(n)), plural(n, "thing needs", "things need"),
 			lowerFirst(titleOf(s, f.Rule)), m.PlusMinus(f.Magnitude, f.Uncertainty, f.UnitOf), f.Priority, confidenceInWords(f.Confidence)))
+	}
+	if n := len(s.Findings) - s.Open(); n > 0 {
+		out[0] += fmt.Sprintf(" It explains %s more %s.", inWords(n), plural(n, "finding", "findings"))
 	}
 	if t := totalOf(s); t != "" {
 		out = append(out, t)

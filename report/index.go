@@ -64,7 +64,7 @@ func IndexPage(w io.Writer, ix Index) error {
 	}{Site: ix.Site, Version: ix.Version, Failed: ix.Failed}
 	for _, i := range order {
 		s := ix.Sets[i]
-		r := indexRow{Unit: s.Unit, Page: ix.Pages[i], Findings: len(s.Findings), Usable: finding.Significant(100*s.UsableShare, 3) + " %", Worth: "–", Cost: "–", Worst: "nothing found", Priority: "–"}
+		r := indexRow{Unit: s.Unit, Page: ix.Pages[i], Findings: s.Open(), Usable: finding.Significant(100*s.UsableShare, 3) + " %", Worth: "–", Cost: "–", Worst: "nothing found", Priority: "–"}
 		for _, c := range s.Coverage {
 			switch c.Verdict {
 			case finding.Pass:

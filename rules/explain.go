@@ -69,7 +69,7 @@ func explained(p *Pass, r *ruling, fixed *balance.Books, roles []trend.Role, opt
 
 // explainedBy turns a finding into one that a sensor explains.
 func explainedBy(f finding.Finding, role trend.Role) finding.Finding {
-	f.Priority = finding.Low
+	f.Priority, f.ExplainedBy = finding.Low, role.String()
 	f.Cause = role.Title() + " sensor out of calibration"
 	f.Suspects = []string{role.String()}
 	f.Statement += fmt.Sprintf(" The offset found for the %s explains it: with that taken off, nothing is left.", role.Title())

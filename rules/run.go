@@ -82,8 +82,12 @@ func Run(ctx context.Context, b *balance.Books, opt Options) finding.Set {
 	return set
 }
 
-// before is the report order within a unit: priority, cost, confidence, rule.
+// before is the report order within a unit: priority, cost, confidence, rule; what is
+// explained by another comes last.
 func before(a, b *finding.Finding) bool {
+	if x, y := a.ExplainedBy != "", b.ExplainedBy != ""; a.Priority == b.Priority && x != y {
+		return y
+	}
 	if a.Priority != b.Priority {
 		return a.Priority > b.Priority
 	}

@@ -16,7 +16,7 @@ var sensorOffset = &Rule{
 	Unit: "fraction",
 	Harm: Misleads,
 	Doc: Doc{
-		Title: "Sensor outside its accuracy, found by closing all balances at once",
+		Title: "Sensor outside its accuracy",
 		Text: "Asks which constant offset of each sensor would let every balance of the period close at once: the mixing box in moisture and temperature, the dry train, each section with its coils shut, " +
 			"the mixture at either end of its damper, and the site's weather. A sensor is named where the balances do not believe its offset to be within its accuracy and no other sensor or part would explain as much. " +
 			"The effect is the offset as a share of the accuracy.",

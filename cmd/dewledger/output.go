@@ -238,12 +238,14 @@ func brief(w io.Writer, units []audited, measure finding.Measure, o *output) {
 		s := &u.set
 		_, passed, untested := verdicts(s)
 		fmt.Fprintf(w, "%s: %s in %s hours; %d rules passed, %d could not be tested\n", u.name,
-			count(len(s.Findings), "finding"), finding.Grouped(s.PeriodHours, 0), passed, untested)
+			count(s.Open(), "finding"), finding.Grouped(s.PeriodHours, 0), passed, untested)
 		if len(units) <= most {
 			for k := range s.Findings {
 				f := &s.Findings[k]
 				fmt.Fprintf(w, "\n  %-7s %s\n", f.Priority, fold(f.Statement, 10, 92))
-				fmt.Fprintf(w, "          Check first: %s\n", fold(f.Check, 10, 92))
+				if f.ExplainedBy == "" {
+					fmt.Fprintf(w, "          Check first: %s\n", fold(f.Check, 10, 92))
+				}
 			}
 		} else if len(s.Findings) > 0 {
 			f := &s.Findings[0]

@@ -77,6 +77,7 @@ type Finding struct {
 	Checks      []string // all checks, cheapest first; Check is the first
 	Lookalikes  string   // what else looks the same, a sentence
 	Cause       string
+	ExplainedBy string // role of the sensor whose offset explains it; empty: nothing does
 	Cautions    []Caution
 	Spans       []Span
 	Trace       Trace `json:"-"`
@@ -173,4 +174,15 @@ type Set struct {
 type OneMore struct {
 	Role  string
 	Rules []string
+}
+
+// Open counts the findings that nothing else explains.
+func (s *Set) Open() int {
+	n := 0
+	for k := range s.Findings {
+		if s.Findings[k].ExplainedBy == "" {
+			n++
+		}
+	}
+	return n
 }
