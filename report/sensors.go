@@ -74,11 +74,7 @@ func sensorsOf(b *balance.Books, k float64, m finding.Measure) *sensorsView {
 func suspectInWords(s balance.Suspect, k float64, m finding.Measure) string {
 	first := ""
 	if s.Role == trend.NoRole {
-		unit, scale := s.Unit, 1.0
-		if unit == "fraction" {
-			unit, scale = "%", 100
-		}
-		first = fmt.Sprintf("%s is %s, where %s is usual", s.What, m.PlusMinus(scale*s.Val, scale*k*s.U, unit), m.PlusMinus(scale*s.Usual, scale*k*s.Prior, unit))
+		first = fmt.Sprintf("%s is %s, where %s is usual", s.What, m.PlusMinus(s.Val, k*s.U, s.Unit), m.PlusMinus(s.Usual, k*s.Prior, s.Unit))
 	} else {
 		way := "high"
 		if s.Val < 0 {
@@ -102,14 +98,6 @@ func suspectInWords(s balance.Suspect, k float64, m finding.Measure) string {
 
 // offset words a sensor's offset: a difference in its own unit.
 func offset(m finding.Measure, x, u float64, r trend.Role) string {
-	unit, scale := r.Kind().Unit(), 1.0
-	switch unit {
-	case "degC":
-		unit = "K"
-	case "fraction":
-		unit, scale = "%", 100
-	case "kg/kg":
-		unit, scale = "g/kg", 1000
-	}
+	unit, scale := finding.Difference(r.Kind().Unit())
 	return m.PlusMinus(scale*x, scale*u, unit)
 }

@@ -90,18 +90,11 @@ var sensorOffset = &Rule{
 }
 
 func offsetSays(p *Pass, r trend.Role, val, u, band float64) string {
-	way, unit, scale := "high", r.Kind().Unit(), 1.0
+	way := "high"
 	if val < 0 {
 		way = "low"
 	}
-	switch unit {
-	case "degC":
-		unit = "K"
-	case "fraction":
-		unit, scale = "%", 100
-	case "kg/kg":
-		unit, scale = "g/kg", 1000
-	}
+	unit, scale := finding.Difference(r.Kind().Unit())
 	return fmt.Sprintf("The {reading} reads %s too %s, %s times its accuracy: only so do the balances of {tested} hours close, all at once. A sensor out of calibration, badly placed or wrongly scaled would do this.",
 		p.words.PlusMinus(scale*math.Abs(val), scale*p.Factor()*u, unit), way, finding.Significant(math.Abs(val)/band, 2))
 }

@@ -93,6 +93,18 @@ func (m Measure) Scale(unit string) float64 {
 	return s[m].scale
 }
 
+// Difference is the unit in which a difference of readings in a canonical unit is told,
+// and the factor to it: K for degC, g/kg for kg/kg.
+func Difference(unit string) (string, float64) {
+	switch unit {
+	case "degC":
+		return "K", 1
+	case "kg/kg":
+		return "g/kg", 1000
+	}
+	return unit, 1
+}
+
 // Value words a value without an uncertainty: "4.2 K", "no figure" for NaN.
 // It keeps the given number of significant digits, at least those of the whole
 // part up to four.
