@@ -587,75 +587,162 @@ func (b *Books) reconcile() *Reconciliation {
 	if len(rs.used) == 0 {
 		return nil
 	}
-	prior := filled(len(rs.unknowns), 1)
-	var f fit
-	for range 4 {
-		var ok bool
-		if f, ok = rs.solve(prior); !ok {
-			return nil
-		}
-		rs.reweigh(f.z)
-	}
-	var ok bool
-	if f, ok = rs.solve(prior); !ok {
+	first, prior := rs, rs.priors(nil)
+	f, ok := rs.estimate(prior)
+	if !ok {
 		return nil
 	}
 	out := &Reconciliation{}
 	out.Chi2, out.Dof = global(f, prior)
 	out.P = chiTail(out.Chi2, out.Dof)
 	out.Held = rs.offsets(f, prior)
-	defer func() {
-		out.Offsets, out.Closed = rs.offsets(f, prior), rs.closures(f)
-	}()
-
-	// Serial elimination.
 	tested := 0
 	for k := range rs.unknowns {
 		if !math.IsNaN(f.test(k, prior)) {
 			tested++
 		}
 	}
-	limit := sidak(familyLevel, max(tested, 1))
-	out.Remaining, out.limit = out.P, limit
+	out.Remaining, out.limit = out.P, sidak(familyLevel, max(tested, 1))
+
+	// Serial elimination.
+	shift, free := map[trend.Role]float64{}, map[parameterKey]bool{}
 	for range mostFreed {
-		worst, same := rs.worst(f, prior, limit)
+		worst, same := rs.worst(f, prior, out.limit)
 		if worst < 0 {
 			break
 		}
-		s := Suspect{}
 		test := f.test(worst, prior)
+		var others []Alternate
 		for _, k := range same {
-			s.Alternates = append(s.Alternates, Alternate{rs.unknowns[k].role, rs.unknowns[k].name})
+			others = append(others, Alternate{rs.unknowns[k].role, rs.unknowns[k].name})
 		}
-		prior[worst] = freed
+		key := rs.unknowns[worst].key()
+		free[key] = true
+		// A sensor far out bends the balances: they are struck again with its offset
+		// taken off (Gauss-Newton), twice.
+		again, g, at, last := rs, f, worst, 0.0
 		for range 3 {
-			if f, ok = rs.solve(prior); !ok {
-				return out
+			prior = again.priors(free)
+			if g, ok = again.estimate(prior); !ok || key.role == trend.NoRole {
+				break
 			}
-			rs.reweigh(f.z)
+			rs, f, worst = again, g, at
+			last = f.z[worst] * rs.unknowns[worst].u
+			shift[key.role] += last
+			c := Keep(shifted(b.u, shift))
+			again = c.gather(c.equations())
+			if at = again.find(key); at < 0 {
+				break
+			}
 		}
-		s.What = rs.unknowns[worst].name
-		if role := rs.unknowns[worst].role; role != trend.NoRole {
-			for _, o := range rs.offsets(f, prior) {
-				if o.Role == role {
-					s.Offset = o
-				}
-			}
-			s.Bands = s.Val / (s.Prior * sqrt3)
-		} else {
-			x, scale := rs.unknowns[worst].is, 1.0
-			if x.scale != 0 {
-				scale = x.scale
-			}
-			s.Unit, s.Usual, s.Prior = x.unit, scale*(x.mean+x.base), scale*x.u
-			s.Val, s.U = s.Usual+scale*x.u*f.z[worst], scale*x.u*math.Sqrt(f.cov.At(worst, worst))
+		if key.role != trend.NoRole { // the last estimate, about the shift before it
+			shift[key.role] -= last
+		} else if ok {
+			f = g
 		}
-		s.Test = test
-		out.Suspects = append(out.Suspects, s)
+		prior = rs.priors(free)
+		out.Suspects = append(out.Suspects, rs.suspect(f, prior, worst, shift, test, others))
 		chi2, dof := global(f, prior)
 		out.Remaining = chiTail(chi2, dof)
 	}
+	out.Offsets = rs.offsets(f, prior)
+	for k := range out.Offsets {
+		out.Offsets[k].Val += shift[out.Offsets[k].Role]
+	}
+	out.Closed = first.closures(filled(len(first.unknowns), 0))
+	for _, c := range rs.closures(f.z) {
+		for k := range out.Closed {
+			if out.Closed[k].Name == c.Name {
+				out.Closed[k].After = c.After
+			}
+		}
+	}
 	return out
+}
+
+// humidityBeside reports whether rh is the humidity sensor beside the dry bulb t. A
+// humidity sensor may be out by a share of its reading, which no constant offset of its
+// own fits well; one of the temperature beside it, implausibly large, may fit better.
+func humidityBeside(t, rh trend.Role) bool {
+	return t != trend.NoRole && rh.Kind() == trend.RelHumidity && rh.Station() != trend.NoStation && t == rh.Station().DryBulb()
+}
+
+// shifted is the unit with offsets taken off its readings.
+func shifted(u *trend.Unit, shift map[trend.Role]float64) *trend.Unit {
+	v := *u
+	for role, x := range shift {
+		c := *u.Cols[role]
+		c.Val = slices.Clone(c.Val)
+		for i := range c.Val {
+			c.Val[i] -= x
+		}
+		v.Cols[role] = &c
+	}
+	return &v
+}
+
+// parameterKey tells unknowns apart.
+type parameterKey struct {
+	role trend.Role
+	name string
+}
+
+func (p parameter) key() parameterKey { return parameterKey{p.role, p.name} }
+
+func (r *rows) find(key parameterKey) int {
+	return slices.IndexFunc(r.unknowns, func(p parameter) bool { return p.key() == key })
+}
+
+// priors are the unknowns' prior variances.
+func (r *rows) priors(free map[parameterKey]bool) []float64 {
+	out := filled(len(r.unknowns), 1)
+	for k, p := range r.unknowns {
+		if free[p.key()] {
+			out[k] = freed
+		}
+	}
+	return out
+}
+
+// estimate is the fit with the blocks' noise and weights settled.
+func (r *rows) estimate(prior []float64) (fit, bool) {
+	for range 4 {
+		f, ok := r.solve(prior)
+		if !ok {
+			return f, false
+		}
+		r.reweigh(f.z)
+	}
+	return r.solve(prior)
+}
+
+// suspect words unknown k, freed, as a suspect.
+func (r *rows) suspect(f fit, prior []float64, k int, shift map[trend.Role]float64, test float64, others []Alternate) Suspect {
+	p := r.unknowns[k]
+	s := Suspect{What: p.name, Alternates: others}
+	if p.role != trend.NoRole {
+		for _, o := range r.offsets(f, prior) {
+			if o.Role == p.role {
+				s.Offset = o
+			}
+		}
+		s.Val += shift[p.role]
+		s.Bands = s.Val / (s.Prior * sqrt3)
+		for _, q := range r.unknowns {
+			if math.Abs(s.Bands) > plausible && humidityBeside(p.role, q.role) {
+				s.Alternates = append(s.Alternates, Alternate{Role: q.role})
+			}
+		}
+	} else {
+		x, scale := p.is, 1.0
+		if x.scale != 0 {
+			scale = x.scale
+		}
+		s.Unit, s.Usual, s.Prior = x.unit, scale*(x.mean+x.base), scale*x.u
+		s.Val, s.U = s.Usual+scale*x.u*f.z[k], scale*x.u*math.Sqrt(f.cov.At(k, k))
+	}
+	s.Test = test
+	return s
 }
 
 // worst is the unknown to be freed next and those that would explain as much; -1 where
@@ -682,7 +769,11 @@ func (r *rows) worst(f fit, prior []float64, limit float64) (worst int, same []i
 		return 0
 	}
 	for k := range r.unknowns {
-		if t := f.test(k, prior); prior[k] == 1 && math.Abs(t) > limit && most*most-t*t < asGood && !r.covered(k, prior) {
+		t := f.test(k, prior)
+		if prior[k] != 1 || !(math.Abs(t) > limit) || r.covered(k, prior) {
+			continue
+		}
+		if most*most-t*t < asGood {
 			same = append(same, k)
 		}
 	}
@@ -738,7 +829,7 @@ func (r *rows) offsets(f fit, prior []float64) []Offset {
 	return out
 }
 
-func (r *rows) closures(f fit) []Closed {
+func (r *rows) closures(z []float64) []Closed {
 	out := make([]Closed, len(r.used))
 	for e, q := range r.used {
 		c := Closed{Name: q.name, Title: q.title, Unit: q.unit, Hours: r.hours[e]}
@@ -748,7 +839,7 @@ func (r *rows) closures(f fit) []Closed {
 				continue
 			}
 			c.Before += r.r[i] * q.scale / float64(r.blocks[e])
-			c.After += r.residual(i, f.z) * q.scale / float64(r.blocks[e])
+			c.After += r.residual(i, z) * q.scale / float64(r.blocks[e])
 			for k, x := range r.a[i] {
 				mean[k] += x / float64(r.blocks[e])
 			}
