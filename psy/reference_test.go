@@ -1,36 +1,19 @@
 package psy
 
 import (
-	"bytes"
 	"encoding/json"
 	"math"
 	"math/rand/v2"
-	"os"
-	"os/exec"
-	"path/filepath"
 	"testing"
+
+	"dewledger/testdata/reference"
 )
 
 // The ideal-gas forms against a general reference library of the handbook's
 // equations (psychrolib, run under Node; testdata/reference says which version):
 // closed forms within 1e-9, iterated temperatures within 1e-3 K, the library's own
-// tolerance. Skipped without Node or the library, unless DEWLEDGER_NO_SKIP is 1.
+// tolerance.
 func TestIdealAgainstReferenceLibrary(t *testing.T) {
-	dir := filepath.Join("..", "testdata", "reference")
-	lack := func(why string) {
-		if os.Getenv("DEWLEDGER_NO_SKIP") == "1" {
-			t.Fatal(why)
-		}
-		t.Skip(why)
-	}
-	node, err := exec.LookPath("node")
-	if err != nil {
-		lack("no Node on the path")
-	}
-	if _, err := os.Stat(filepath.Join(dir, "node_modules", "psychrolib")); err != nil {
-		lack("the reference library is not installed: run npm ci in testdata/reference")
-	}
-
 	// The library holds humidity ratios at 1e-7 or more: stay above.
 	rng := rand.New(rand.NewPCG(20, 26))
 	var states [][4]float64
@@ -52,9 +35,7 @@ func TestIdealAgainstReferenceLibrary(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	cmd := exec.CommandContext(t.Context(), node, "moist_air.js")
-	cmd.Dir, cmd.Stdin = dir, bytes.NewReader(in)
-	out, err := cmd.Output()
+	out, err := reference.Run(t, "psychrolib", "moist_air.js", in)
 	if err != nil {
 		t.Fatalf("reference library: %v", err)
 	}

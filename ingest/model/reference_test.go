@@ -4,35 +4,18 @@ import (
 	"bytes"
 	"encoding/json"
 	"fmt"
-	"os"
-	"os/exec"
-	"path/filepath"
 	"sort"
 	"strings"
 	"testing"
 
 	"dewledger/ingest/trend"
+	"dewledger/testdata/reference"
 )
 
 // The Turtle reader against a general RDF library (n3, run under Node; testdata/
 // reference says which version): the same statements, blank nodes apart. What we write
-// it must read as well. Skipped without Node or the library, unless DEWLEDGER_NO_SKIP
-// is 1.
+// it must read as well.
 func TestTurtleAgainstReferenceLibrary(t *testing.T) {
-	dir := filepath.Join("..", "..", "testdata", "reference")
-	lack := func(why string) {
-		if os.Getenv("DEWLEDGER_NO_SKIP") == "1" {
-			t.Fatal(why)
-		}
-		t.Skip(why)
-	}
-	node, err := exec.LookPath("node")
-	if err != nil {
-		lack("no Node on the path")
-	}
-	if _, err := os.Stat(filepath.Join(dir, "node_modules", "n3")); err != nil {
-		lack("the reference library is not installed: run npm ci in testdata/reference")
-	}
 	var written bytes.Buffer
 	var points []Point
 	for r := trend.NoRole + 1; r < trend.NumRoles; r++ {
@@ -46,13 +29,8 @@ func TestTurtleAgainstReferenceLibrary(t *testing.T) {
 		"site":    turtleSite,
 		"odd":     "@prefix : <urn:a#> .\n:a.b :c\\~d 'x', '''long \\u0041\n\"y\" ''' , -1.5e3, .5, 7 , true;\n  :p [ :q ( [] ( :r ) \"z\"@en-GB ) ; ; ] , _:lab . # end\n_:lab :x <urn:é> .",
 	} {
-		cmd := exec.CommandContext(t.Context(), node, "turtle.js")
-		cmd.Dir, cmd.Stdin = dir, strings.NewReader(text)
-		out, err := cmd.Output()
+		out, err := reference.Run(t, "n3", "turtle.js", []byte(text))
 		if err != nil {
-			if ee, ok := err.(*exec.ExitError); ok {
-				err = fmt.Errorf("%w: %s", err, ee.Stderr)
-			}
 			t.Errorf("%s: the library refuses it: %v", name, err)
 			continue
 		}
